@@ -18,7 +18,8 @@
 #define MUST_CHECK __attribute__((warn_unused_result))
 #define ARRAY_LENGTH(a) (sizeof(a) / sizeof((a)[0]))
 
-/* ---- errors -------------------------------------------------------------------------------- */
+/* ---- errors --------------------------------------------------------------------------------
+ */
 
 /* What kind of thing went wrong; the sentence in struct error says what, where and the mend. */
 enum err {
@@ -41,34 +42,37 @@ struct error {
 
 /* Sets code and sentence, returns code. err may be NULL. */
 int error_set(struct error *err, int code, const char *fmt, ...) PRINTF_LIKE(3, 4);
-/* Puts "context: " before the sentence; returns the code that err holds. err may be NULL (returns
- * ERR_ARGUMENT then). */
+/* Puts "context: " before the sentence; returns the code that err holds. err may be NULL
+ * (returns ERR_ARGUMENT then). */
 int error_context(struct error *err, const char *fmt, ...) PRINTF_LIKE(2, 3);
 
-/* ---- text ---------------------------------------------------------------------------------- */
+/* ---- text ----------------------------------------------------------------------------------
+ */
 
 /* Copies with a terminating zero; false if it had to cut. size > 0. */
 bool text_copy(char *dst, size_t size, const char *src);
 /* printf to a buffer; false if cut. */
 bool text_format(char *dst, size_t size, const char *fmt, ...) PRINTF_LIKE(3, 4);
 /* Copies src with every control character and every byte that is not part of well-formed UTF-8
- * (and C1 controls, bidirectional overrides) replaced by '?'. For all text that comes from config,
- * devices or clients before it meets a terminal or log. */
+ * (and C1 controls, bidirectional overrides) replaced by '?'. For all text that comes from
+ * config, devices or clients before it meets a terminal or log. */
 void text_printable(char *dst, size_t size, const char *src);
 /* Cuts white space at both ends, in place; returns the first kept character. */
 char *text_trim(char *text);
-/* A whole text as a finite double, '.' as the decimal sign, optional exponent; nothing left over.
- * 0 or ERR_FORMAT / ERR_RANGE. */
+/* A whole text as a finite double, '.' as the decimal sign, optional exponent; nothing left
+ * over. 0 or ERR_FORMAT / ERR_RANGE. */
 int text_to_double(const char *text, double *out) MUST_CHECK;
 /* A whole text as an integer, decimal or 0x, within low..high. 0, ERR_FORMAT or ERR_RANGE. */
 int text_to_long(const char *text, long low, long high, long *out) MUST_CHECK;
-/* Edit distance (insert, delete, replace, swap of neighbours = 1 each), case-insensitive ASCII. */
+/* Edit distance (insert, delete, replace, swap of neighbours = 1 each), case-insensitive ASCII.
+ */
 size_t text_distance(const char *a, const char *b);
 /* The candidate nearest to text, or NULL if none is near enough to be a likely slip. candidates
  * is an array of count strings; NULL entries are skipped. */
 const char *text_nearest(const char *text, const char *const *candidates, size_t count);
 
-/* ---- time ---------------------------------------------------------------------------------- */
+/* ---- time ----------------------------------------------------------------------------------
+ */
 
 #define NS_PER_S INT64_C(1000000000)
 
@@ -79,7 +83,8 @@ double time_ns_to_s(int64_t ns);
 int64_t time_s_to_ns(double s);
 /* "2026-11-30T23:59:59.000Z"; decimals 0..9. size >= 31. */
 void time_format(char *dst, size_t size, int64_t utc_ns, int decimals);
-/* ISO 8601 / RFC 3339 date-time with 'Z' or an offset; date alone is midnight UTC. A leap second
+/* ISO 8601 / RFC 3339 date-time with 'Z' or an offset; date alone is midnight UTC. A leap
+ * second
  * (:60) is taken as the second after :59. 0 or ERR_FORMAT with the sentence. */
 int time_parse(const char *text, int64_t *utc_ns, struct error *err) MUST_CHECK;
 /* "20s", "10min", "4h", "90d", "400 ms": a positive span in seconds. 0 or ERR_FORMAT. */
@@ -87,7 +92,8 @@ int time_parse_span(const char *text, double *span_s, struct error *err) MUST_CH
 /* A span for people, at most two parts: "31 h", "2 d 4 h", "4 min 10 s", "850 ms". */
 void time_format_span(char *dst, size_t size, double span_s);
 
-/* ---- units --------------------------------------------------------------------------------- */
+/* ---- units ---------------------------------------------------------------------------------
+ */
 
 enum dimension {
     DIMENSION_NUMBER, /* pure number: 1, %, ppm, ppb, ppt */
@@ -125,8 +131,8 @@ struct unit {
 
 /* Plain name of a dimension for sentences: "a pressure", "a temperature", "a pure number". */
 const char *dimension_says(enum dimension dimension);
-/* Reads a unit symbol with SI prefixes (f p n u m c k M G where they make sense), "" and "1" are
- * the pure number. 0 or ERR_FORMAT with nearest known symbol. */
+/* Reads a unit symbol with SI prefixes (f p n u m c k M G where they make sense), "" and "1"
+ * are the pure number. 0 or ERR_FORMAT with nearest known symbol. */
 int unit_parse(const char *symbol, struct unit *out, struct error *err) MUST_CHECK;
 /* The SI unit of a dimension (bit: empty symbol). */
 struct unit unit_si(enum dimension dimension);
@@ -135,18 +141,20 @@ double unit_from_si(const struct unit *unit, double value_si);
 /* Differences (and uncertainties): scale without offset. */
 double unit_span_to_si(const struct unit *unit, double span);
 double unit_span_from_si(const struct unit *unit, double span_si);
-/* "12.5 kPa(g)", "-186 degC", "3 ppb", "0.5 1/d": number, space optional, unit. A text without a
- * unit is a pure number. 0 or ERR_FORMAT. unit and value_si are outputs; value_si by unit_to_si. */
-int unit_parse_value(const char *text, struct unit *unit, double *value_si, struct error *err)
-    MUST_CHECK;
+/* "12.5 kPa(g)", "-186 degC", "3 ppb", "0.5 1/d": number, space optional, unit. A text without
+ * a unit is a pure number. 0 or ERR_FORMAT. unit and value_si are outputs; value_si by
+ * unit_to_si. */
+int unit_parse_value(const char *text, struct unit *unit, double *value_si,
+                     struct error *err) MUST_CHECK;
 
-/* ---- quantities ---------------------------------------------------------------------------- */
+/* ---- quantities ----------------------------------------------------------------------------
+ */
 
-#define QUALITY_LIST(X)                                                                            \
-    X(GOOD, "good", ' ')                                                                           \
-    X(UNCERTAIN, "uncertain", '?')                                                                 \
-    X(STALE, "stale", '~')                                                                         \
-    X(BAD, "bad", '!')                                                                             \
+#define QUALITY_LIST(X)                                                                        \
+    X(GOOD, "good", ' ')                                                                       \
+    X(UNCERTAIN, "uncertain", '?')                                                             \
+    X(STALE, "stale", '~')                                                                     \
+    X(BAD, "bad", '!')                                                                         \
     X(MISSING, "missing", '-')
 
 #define X(id, word, mark) QUALITY_##id,
@@ -171,11 +179,12 @@ struct quantity quantity_good(double value, double u);
 struct quantity quantity_none(enum quality quality);
 /* Good or uncertain: may be computed with. */
 bool quantity_usable(struct quantity q);
-/* Number of decimals at which value in its display unit shows no digit that u makes meaningless:
- * u keeps two significant digits at most. 0..9. u <= 0 gives fallback. */
+/* Number of decimals at which value in its display unit shows no digit that u makes
+ * meaningless: u keeps two significant digits at most. 0..9. u <= 0 gives fallback. */
 int quantity_decimals(double u, int fallback);
 
-/* ---- statistics ---------------------------------------------------------------------------- */
+/* ---- statistics ----------------------------------------------------------------------------
+ */
 
 /* Cumulative normal distribution; its inverse for 0 < p < 1. */
 double statistics_normal_cdf(double z);
@@ -188,9 +197,11 @@ struct line_fit {
     double residual_sd;
     size_t n;
 };
-int statistics_line(const double *t, const double *y, size_t n, struct line_fit *out) MUST_CHECK;
+int statistics_line(const double *t, const double *y, size_t n,
+                    struct line_fit *out) MUST_CHECK;
 
-/* ---- memory -------------------------------------------------------------------------------- */
+/* ---- memory --------------------------------------------------------------------------------
+ */
 
 /* Memory that is taken once at start-up and given back as a whole. arena_take returns zeroed,
  * aligned memory or NULL. Not thread-safe. */
@@ -200,7 +211,8 @@ void *arena_take(struct arena *arena, size_t count, size_t size);
 char *arena_text(struct arena *arena, const char *text);
 void arena_free(struct arena *arena);
 
-/* ---- log ----------------------------------------------------------------------------------- */
+/* ---- log -----------------------------------------------------------------------------------
+ */
 
 enum log_level { LOG_LEVEL_ERROR, LOG_LEVEL_WARNING, LOG_LEVEL_NOTICE, LOG_LEVEL_DEBUG };
 

@@ -1,0 +1,67 @@
+/* SPDX-License-Identifier: MIT */
+/* Copyright the ullage authors */
+
+/*
+ * service: the collector loop, and what a terminal is given to show. One frame per tick by an
+ * absolute schedule on the monotonic clock: take the links' slots, make the frame, step the
+ * engine, publish the view.
+ */
+#ifndef ULLAGE_SERVICE_H
+#define ULLAGE_SERVICE_H
+
+#include <stdbool.h>
+#include <stdint.h>
+
+#include "ullage/base.h"
+#include "ullage/engine.h"
+#include "ullage/field.h"
+#include "ullage/plant.h"
+
+/* ---- view: all that a picture is drawn from
+ * -------------------------------------------------- */
+
+enum view_mode { VIEW_LIVE, VIEW_DEMO, VIEW_REPLAY };
+const char *view_mode_word(enum view_mode mode);
+
+enum { VIEW_JOURNAL_MAX = 500, VIEW_LOG_MAX = 100 };
+
+/* Const for whoever draws; valid until the next tick. */
+struct view {
+    const struct plant *plant;
+    enum view_mode mode;
+    int64_t utc_ns; /* the clock of the title: of the frame */
+    bool ready;     /* a first whole frame is there */
+    bool stale;     /* the source has stopped: nothing here is live */
+    double stale_s; /* for how long */
+    const struct frame *frame;
+    const struct results *results;
+    const struct engine *engine; /* for budgets, trends, alarms */
+    const struct link_state *link;
+    int links_up;
+    int journal_count; /* newest last */
+    const struct journal_entry *journal;
+};
+
+/* ---- collector ------------------------------------------------------------------------------
+ */
+
+struct collector;
+struct collector_options {
+    enum view_mode mode;
+};
+/* Opens field and engine of a plant, which must outlive it. */
+int collector_open(const struct plant *plant, const struct collector_options *options,
+                   struct collector **out, struct error *err) MUST_CHECK;
+void collector_close(struct collector *collector);
+/* Hands the engine a frame made elsewhere (the demo's past), before the first tick. */
+void collector_feed(struct collector *collector, const struct frame *frame);
+/* Becomes readable when collector_tick has something to do. */
+int collector_fd(const struct collector *collector);
+/* Does what is due; true when a new frame has been made. */
+bool collector_tick(struct collector *collector);
+const struct view *collector_view(const struct collector *collector);
+/* A command of an operator, applied with the next frame. 0, or ERR_ARGUMENT when the queue is
+ * full. */
+int collector_command(struct collector *collector, const struct command *command) MUST_CHECK;
+
+#endif
