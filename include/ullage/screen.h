@@ -129,4 +129,23 @@ int64_t terminal_key(struct terminal *terminal);
 /* Shows the canvas; writes only what changed. */
 void terminal_show(struct terminal *terminal, const struct canvas *canvas);
 
+/* ---- dashboard: a collector on a terminal, or as one picture
+ * ---------------------------------- */
+
+struct dashboard_options {
+    bool ascii, mono;
+    const char *panel; /* NULL: the first */
+    int columns, rows; /* of a printed picture; 0: the terminal's, or 80 x 24 */
+    const char *user;  /* whose acknowledgements these are */
+};
+/* Shows a started collector until the operator quits or SIGINT, SIGTERM or SIGHUP arrives on
+ * signals_fd. 0 or a negative code; the terminal is given back either way. */
+int dashboard_run(struct collector *collector, const struct dashboard_options *options,
+                  int signals_fd, struct error *err) MUST_CHECK;
+/* Waits for the first whole frame, at most patience_s, and writes one picture to out. *well is
+ * false while a safety banner (danger or caution) stands or the source is stale. */
+int dashboard_print(struct collector *collector, const struct dashboard_options *options,
+                    int signals_fd, double patience_s, FILE *out, bool *well,
+                    struct error *err) MUST_CHECK;
+
 #endif

@@ -35,7 +35,8 @@ struct view {
     double stale_s; /* for how long */
     const struct frame *frame;
     const struct results *results;
-    const struct engine *engine; /* for budgets, trends, alarms */
+    const struct engine *engine; /* for budgets and trends; NULL in a picture without one */
+    const struct alarm_set *alarms;
     const struct link_state *link;
     int links_up;
     int journal_count; /* newest last */
@@ -49,19 +50,33 @@ struct collector;
 struct collector_options {
     enum view_mode mode;
 };
-/* Opens field and engine of a plant, which must outlive it. */
+/* Makes the engine and the frame of a plant, which must outlive it. Nothing is polled yet. */
 int collector_open(const struct plant *plant, const struct collector_options *options,
                    struct collector **out, struct error *err) MUST_CHECK;
 void collector_close(struct collector *collector);
-/* Hands the engine a frame made elsewhere (the demo's past), before the first tick. */
+/* Hands the engine a frame made elsewhere (the demo's past); before collector_start only. */
 void collector_feed(struct collector *collector, const struct frame *frame);
-/* Becomes readable when collector_tick has something to do. */
+/* Opens the links and starts the schedule. */
+int collector_start(struct collector *collector, struct error *err) MUST_CHECK;
+/* Becomes readable when collector_tick has something to do; -1 before the start. */
 int collector_fd(const struct collector *collector);
 /* Does what is due; true when a new frame has been made. */
 bool collector_tick(struct collector *collector);
 const struct view *collector_view(const struct collector *collector);
 /* A command of an operator, applied with the next frame. 0, or ERR_ARGUMENT when the queue is
  * full. */
-int collector_command(struct collector *collector, const struct command *command) MUST_CHECK;
+int collector_command(struct collector *collector, const struct command *command,
+                      struct error *err) MUST_CHECK;
+/* Frames made, and ticks of the schedule that passed without one. */
+void collector_counts(const struct collector *collector, uint64_t *frames, uint64_t *missed);
+
+/* ---- signals as events
+ * ----------------------------------------------------------------------- */
+
+/* Blocks SIGINT, SIGTERM and SIGHUP in the calling thread (do it before any other is started)
+ * and gives a descriptor that becomes readable when one arrives. Negative code on failure. */
+int signals_open(struct error *err) MUST_CHECK;
+/* The signal that arrived, 0 if none waits. */
+int signals_take(int fd);
 
 #endif
