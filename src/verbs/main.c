@@ -2,8 +2,8 @@
 /* Copyright the ullage authors */
 
 /*
- * The program: a table of verbs. Only LC_CTYPE is taken from the locale, so that a decimal comma
- * never enters parsing, CSV or reports.
+ * The program: a table of verbs. Only LC_CTYPE is taken from the locale, so that a decimal
+ * comma never enters parsing, CSV or reports.
  */
 #include "verbs.h"
 
@@ -20,29 +20,30 @@ static const struct verb verbs[] = {
     {.name = "watch",
      .run = verb_watch,
      .usage = "-c FILE --direct [--panel NAME] [--print]",
-     .says = "the dashboard on a plant"},
+     .says = "the dashboard on a plant"                                    },
     {.name = "check",
      .run = verb_check,
      .usage = "FILE [--strict] [--map]",
-     .says = "validates a plant file, all errors at once"},
+     .says = "validates a plant file, all errors at once"                  },
     {.name = "fluid",
      .run = verb_fluid,
      .usage = "NAME [--at T=87.3K,p=1.2bar] [--csv]",
-     .says = "properties of a fluid"},
+     .says = "properties of a fluid"                                       },
     {.name = "simulate",
      .run = verb_simulate,
      .usage = "-c FILE [--listen ADDR:PORT] [--upset NAME]",
-     .says = "the simulated plant as Modbus/TCP devices"},
+     .says = "the simulated plant as Modbus/TCP devices"                   },
     {.name = "inspect",
      .run = verb_inspect,
      .usage = "HOST:PORT --read \"input 0 f32\"",
-     .says = "reads registers of a device once"},
+     .says = "reads registers of a device once"                            },
 };
 
 static void print_help(FILE *out)
 {
     fputs("usage: ullage VERB [options]\n\n"
-          "Keeps the heat, mass, purity and air ledgers of a liquid-argon or nitrogen plant from\n"
+          "Keeps the heat, mass, purity and air ledgers of a liquid-argon or nitrogen plant "
+          "from\n"
           "its instruments' readings over Modbus/TCP, and shows what does not add up.\n\n",
           out);
     for (size_t i = 0; i < ARRAY_LENGTH(verbs); i++)

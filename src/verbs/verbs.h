@@ -3,8 +3,8 @@
 
 /*
  * The verbs of the command line: one file each, one table in main.c. A verb reads its options,
- * calls the rooms below and turns what they return into text and an exit status; the rest of the
- * program never exits.
+ * calls the rooms below and turns what they return into text and an exit status; the rest of
+ * the program never exits.
  */
 #ifndef ULLAGE_VERBS_H
 #define ULLAGE_VERBS_H
@@ -36,7 +36,8 @@ struct verb {
 int verb_failed(const char *verb, const struct error *err);
 /* The same for a bad option, with a hint at --help; returns EXIT_USAGE. */
 int verb_usage(const char *verb, const char *fmt, ...) PRINTF_LIKE(2, 3);
-/* Reads a plant file; its problems go to stderr, one a line. 0 or a negative code (already told). */
+/* Reads a plant file; its problems go to stderr, one a line. 0 or a negative code (already
+ * told). */
 int verb_read_plant(const char *path, struct plant **out) MUST_CHECK;
 /* Writes problems to stderr as FILE:LINE: error: text. */
 void verb_print_problems(const struct problems *problems);
