@@ -57,6 +57,9 @@ bool text_format(char *dst, size_t size, const char *fmt, ...) PRINTF_LIKE(3, 4)
  * (and C1 controls, bidirectional overrides) replaced by '?'. For all text that comes from
  * config, devices or clients before it meets a terminal or log. */
 void text_printable(char *dst, size_t size, const char *src);
+/* The rune at the start of text and its length in bytes; 0 if the bytes are not well-formed
+ * UTF-8 (rune untouched). */
+size_t text_rune(const char *text, uint32_t *rune);
 /* Cuts white space at both ends, in place; returns the first kept character. */
 char *text_trim(char *text);
 /* A whole text as a finite double, '.' as the decimal sign, optional exponent; nothing left
