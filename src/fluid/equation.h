@@ -1,0 +1,138 @@
+/* SPDX-License-Identifier: MIT */
+/* Copyright the ullage authors */
+
+/*
+ * What a fluid's file holds, and the evaluation of its equation. A fluid is data: every term of
+ * every equation is one of the forms below, written once in terms.c.
+ *
+ * alpha(tau, delta) = a/(R T), tau = T_reduce/T, delta = rho/rho_reduce (molar).
+ */
+#ifndef ULLAGE_FLUID_EQUATION_H
+#define ULLAGE_FLUID_EQUATION_H
+
+#include "ullage/fluid.h"
+
+enum { FLUID_TERM_MAX = 64, FLUID_ANCILLARY_MAX = 8 };
+
+/* n delta^d tau^t, with exp(-delta^l) where l > 0, or with
+ * exp(-eta (delta - epsilon)^2 - beta (tau - gamma)^2) where gauss. */
+struct residual_term {
+    double n, t;
+    int d, l;
+    bool gauss;
+    double eta, beta, gamma, epsilon;
+};
+
+/* n tau^t; n ln(1 - exp(-theta tau)). */
+struct ideal_power {
+    double n, t;
+};
+struct ideal_planck {
+    double n, theta;
+};
+
+/* sum n theta^t, theta = 1 - T/T_reduce: starting values only, the equal-Gibbs condition
+ * decides. */
+struct ancillary {
+    double reducing_value;
+    int count;
+    double n[FLUID_ANCILLARY_MAX], t[FLUID_ANCILLARY_MAX];
+};
+
+enum melting_form {
+    MELTING_NONE,
+    MELTING_SIMON,
+    MELTING_POLYNOMIAL_TR,
+    MELTING_POLYNOMIAL_THETA
+};
+struct melting_part {
+    double min_temperature_k, max_temperature_k, t0_k, p0_pa;
+    double a[2], t[2];
+};
+
+struct transport_term {
+    double n, t;
+    int d, l;
+};
+struct transport {
+    double sigma_nm, epsilon_k;
+    int viscosity_count, conductivity_count;
+    struct transport_term viscosity[8], conductivity[8];
+    double a1;                        /* conductivity of the dilute gas per uPa s */
+    double a[2], t[2];                /* and its terms in tau */
+    double q_d_per_m, xi0_m, t_ref_k; /* critical enhancement */
+};
+
+struct fluid {
+    const char *name;
+    struct fluid_limits limits;
+    double reduce_temperature_k, reduce_density_mol_m3; /* of the equation */
+    double critical_density_mol_m3;
+    double lead_a1, lead_a2; /* with the offset of the reference state added */
+    double log_tau;
+    int ideal_power_count, planck_count;
+    const struct ideal_power *ideal_power;
+    const struct ideal_planck *planck;
+    int term_count;
+    const struct residual_term *term;
+    double ancillary_temperature_k;
+    struct ancillary pressure, liquid_density, vapour_density;
+    double tension_temperature_k; /* sum a (1 - T/this)^n */
+    int tension_count;
+    double tension_a[3], tension_n[3];
+    enum melting_form melting;
+    int melting_count;
+    struct melting_part melting_part[2];
+    const struct transport *transport; /* NULL: no model */
+};
+
+/* The part of an equation that depends on temperature alone, computed once per isotherm: for
+ * each term c = n tau^t ..., tau dc/dtau and tau^2 d2c/dtau2. */
+struct isotherm {
+    const struct fluid *fluid;
+    double temperature_k, tau;
+    double c[FLUID_TERM_MAX];
+};
+void isotherm_set(struct isotherm *isotherm, const struct fluid *fluid, double temperature_k);
+
+/* Residual part and its density derivatives at one density: a, delta a_d, delta^2 a_dd. */
+struct residual_density {
+    double a, d, dd;
+};
+void residual_density(const struct isotherm *isotherm, double delta,
+                      struct residual_density *out);
+
+/* The rest: tau a_t, tau^2 a_tt, delta tau a_dt. */
+struct residual_whole {
+    struct residual_density density;
+    double t, tt, dt;
+};
+void residual_whole(const struct isotherm *isotherm, double delta, struct residual_whole *out);
+
+/* Molar density from mass density and back. */
+double molar_density(const struct fluid *fluid, double density_kg_m3);
+
+/* All properties of one phase at a molar density on an isotherm (phase, saturated and
+ * vapour_fraction are the caller's to set). */
+void state_fill(const struct isotherm *isotherm, double density_mol_m3,
+                struct fluid_state *out);
+
+/* Molar density of the wanted phase (LIQUID, VAPOUR or SUPERCRITICAL) at a pressure on an
+ * isotherm, from a start on the stable side of it. 0, ERR_RANGE beyond the spinodal,
+ * ERR_CONVERGE. */
+int density_solve(const struct isotherm *isotherm, double pressure_pa, enum fluid_phase wanted,
+                  double start_mol_m3, double *density_mol_m3);
+
+/* Starting values of the saturation line; within 1 % or so. */
+double ancillary_pressure_pa(const struct fluid *fluid, double temperature_k);
+double ancillary_liquid_mol_m3(const struct fluid *fluid, double temperature_k);
+double ancillary_vapour_mol_m3(const struct fluid *fluid, double temperature_k);
+
+/* Pressure of the melting line at T; false where no line is known. */
+bool melting_pressure(const struct fluid *fluid, double temperature_k, double *pressure_pa);
+
+/* 0, or ERR_RANGE with the sentence, when T (and p) leave the validity or enter the solid. */
+int validity_check(const struct fluid *fluid, double temperature_k, double pressure_pa,
+                   struct error *err);
+
+#endif

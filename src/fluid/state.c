@@ -1,0 +1,417 @@
+/* SPDX-License-Identifier: MIT */
+/* Copyright the ullage authors */
+
+/*
+ * States by pairs of inputs. Temperature and pressure is the ground; the others look for the
+ * temperature that fits, each on a stretch where their function of temperature rises.
+ */
+#include "equation.h"
+
+#include <float.h>
+#include <math.h>
+
+/* Below this part of the critical temperature the auxiliary equations are surely on the stable
+ * side of each branch; above it the full saturation is solved. */
+static const double ANCILLARY_SAFE = 0.97;
+/* Where pressure is nearer to the auxiliary vapour pressure than this, the full one decides. */
+static const double NEAR_LINE = 0.03;
+/* A state this near to the line (relative in pressure) is on it: a double cannot tell. */
+static const double ON_LINE = 1e-11;
+
+/* Where the branches begin at a temperature, and the vapour pressure as well as it is needed.
+ */
+struct line {
+    double pressure, liquid, vapour; /* molar densities */
+    bool full;
+    struct fluid_saturation saturation;
+};
+
+static int line_at(const struct fluid *fluid, double temperature, double pressure,
+                   enum fluid_phase wanted, struct line *line, struct error *err)
+{
+    double part = temperature / fluid->limits.critical_temperature_k;
+    line->pressure = ancillary_pressure_pa(fluid, temperature);
+    line->liquid = ancillary_liquid_mol_m3(fluid, temperature);
+    line->vapour = ancillary_vapour_mol_m3(fluid, temperature);
+    bool near = fabs(pressure / line->pressure - 1) < NEAR_LINE;
+    line->full = part > ANCILLARY_SAFE || (wanted == FLUID_PHASE_ANY && near);
+    if (!line->full)
+        return 0;
+    int code = fluid_saturation_at_t(fluid, temperature, &line->saturation, err);
+    if (code != 0)
+        return code;
+    line->pressure = line->saturation.pressure_pa;
+    line->liquid = molar_density(fluid, line->saturation.liquid.density_kg_m3);
+    line->vapour = molar_density(fluid, line->saturation.vapour.density_kg_m3);
+    return 0;
+}
+
+static int no_phase(const struct fluid *fluid, enum fluid_phase wanted, double temperature,
+                    double pressure, struct error *err)
+{
+    return error_set(err, ERR_RANGE, "%s: no %s at %.6g K and %.6g Pa, not even metastable",
+                     fluid->name, fluid_phase_word(wanted), temperature, pressure);
+}
+
+int fluid_at_tp(const struct fluid *fluid, double temperature_k, double pressure_pa,
+                enum fluid_phase wanted, struct fluid_state *out, struct error *err)
+{
+    const struct fluid_limits *limits = &fluid->limits;
+    int code = validity_check(fluid, temperature_k, pressure_pa, err);
+    if (code != 0)
+        return code;
+    struct isotherm isotherm;
+    struct fluid_state state = {0};
+    double density, ideal = pressure_pa / (limits->gas_constant_j_mol_k * temperature_k);
+    bool above = temperature_k >= limits->critical_temperature_k;
+    enum fluid_phase phase = above ? FLUID_PHASE_SUPERCRITICAL : wanted;
+    if (above && wanted != FLUID_PHASE_ANY && wanted != FLUID_PHASE_SUPERCRITICAL)
+        return no_phase(fluid, wanted, temperature_k, pressure_pa, err);
+    double start = ideal;
+    if (!above) {
+        struct line line;
+        if (wanted == FLUID_PHASE_SUPERCRITICAL || wanted == FLUID_PHASE_TWO_PHASE)
+            return no_phase(fluid, wanted, temperature_k, pressure_pa, err);
+        code = line_at(fluid, temperature_k, pressure_pa, wanted, &line, err);
+        if (code != 0)
+            return code;
+        if (wanted == FLUID_PHASE_ANY)
+            phase = pressure_pa >= line.pressure ? FLUID_PHASE_LIQUID : FLUID_PHASE_VAPOUR;
+        start = phase == FLUID_PHASE_LIQUID ? line.liquid
+                                            : (ideal < line.vapour ? ideal : line.vapour);
+        state.saturated = line.full && fabs(pressure_pa / line.pressure - 1) < ON_LINE;
+    }
+    isotherm_set(&isotherm, fluid, temperature_k);
+    code = density_solve(&isotherm, pressure_pa, phase, start, &density);
+    if (code == ERR_RANGE)
+        return no_phase(fluid, phase, temperature_k, pressure_pa, err);
+    if (code != 0)
+        return error_set(err, code, "%s: density at %.9g K and %.9g Pa was not found",
+                         fluid->name, temperature_k, pressure_pa);
+    state_fill(&isotherm, density, &state);
+    /* The pressure asked for, not its image through a stiff liquid's density. */
+    state.pressure_pa = pressure_pa;
+    state.enthalpy_j_kg = state.internal_energy_j_kg + pressure_pa / state.density_kg_m3;
+    state.phase = phase;
+    state.vapour_fraction = phase == FLUID_PHASE_LIQUID ? 0 : 1;
+    *out = state;
+    return 0;
+}
+
+static double mix(double liquid, double vapour, double fraction)
+{
+    return liquid + fraction * (vapour - liquid);
+}
+
+static void two_phase(const struct fluid_saturation *line, double fraction,
+                      struct fluid_state *out)
+{
+    const struct fluid_state *l = &line->liquid, *v = &line->vapour;
+    *out = (struct fluid_state){
+        .temperature_k = line->temperature_k,
+        .pressure_pa = line->pressure_pa,
+        .density_kg_m3 = 1 / mix(1 / l->density_kg_m3, 1 / v->density_kg_m3, fraction),
+        .enthalpy_j_kg = mix(l->enthalpy_j_kg, v->enthalpy_j_kg, fraction),
+        .entropy_j_kg_k = mix(l->entropy_j_kg_k, v->entropy_j_kg_k, fraction),
+        .internal_energy_j_kg = mix(l->internal_energy_j_kg, v->internal_energy_j_kg, fraction),
+        .vapour_fraction = fraction,
+        .saturated = true,
+        .phase = FLUID_PHASE_TWO_PHASE,
+    };
+    if (fraction == 0 || fraction == 1)
+        *out = fraction == 0 ? *l : *v;
+}
+
+static int check_fraction(const struct fluid *fluid, double fraction, struct error *err)
+{
+    if (!(fraction >= 0 && fraction <= 1))
+        return error_set(err, ERR_RANGE, "%s: a vapour fraction is from 0 to 1 (asked: %.6g)",
+                         fluid->name, fraction);
+    return 0;
+}
+
+int fluid_at_tx(const struct fluid *fluid, double temperature_k, double vapour_fraction,
+                struct fluid_state *out, struct error *err)
+{
+    struct fluid_saturation line;
+    int code = check_fraction(fluid, vapour_fraction, err);
+    if (code == 0)
+        code = fluid_saturation_at_t(fluid, temperature_k, &line, err);
+    if (code == 0)
+        two_phase(&line, vapour_fraction, out);
+    return code;
+}
+
+int fluid_at_px(const struct fluid *fluid, double pressure_pa, double vapour_fraction,
+                struct fluid_state *out, struct error *err)
+{
+    struct fluid_saturation line;
+    int code = check_fraction(fluid, vapour_fraction, err);
+    if (code == 0)
+        code = fluid_saturation_at_p(fluid, pressure_pa, &line, err);
+    if (code == 0)
+        two_phase(&line, vapour_fraction, out);
+    return code;
+}
+
+int fluid_at_rhot(const struct fluid *fluid, double density_kg_m3, double temperature_k,
+                  struct fluid_state *out, struct error *err)
+{
+    const struct fluid_limits *limits = &fluid->limits;
+    if (!(density_kg_m3 > 0) || !isfinite(density_kg_m3))
+        return error_set(err, ERR_RANGE, "%s: density must be above 0", fluid->name);
+    int code = validity_check(fluid, temperature_k, 1e-3, err);
+    if (code != 0)
+        return code;
+    struct fluid_state state = {.phase = FLUID_PHASE_SUPERCRITICAL, .vapour_fraction = 1};
+    if (temperature_k < limits->critical_temperature_k) {
+        struct fluid_saturation line;
+        code = fluid_saturation_at_t(fluid, temperature_k, &line, err);
+        if (code != 0)
+            return code;
+        double v = 1 / density_kg_m3, v_l = 1 / line.liquid.density_kg_m3;
+        double v_v = 1 / line.vapour.density_kg_m3;
+        if (v >= v_l && v <= v_v) {
+            two_phase(&line, v_v > v_l ? (v - v_l) / (v_v - v_l) : 0, out);
+            return 0;
+        }
+        state.phase = v < v_l ? FLUID_PHASE_LIQUID : FLUID_PHASE_VAPOUR;
+        state.vapour_fraction = v < v_l ? 0 : 1;
+    }
+    struct isotherm isotherm;
+    isotherm_set(&isotherm, fluid, temperature_k);
+    state_fill(&isotherm, molar_density(fluid, density_kg_m3), &state);
+    code = validity_check(fluid, temperature_k, state.pressure_pa, err);
+    if (code == 0)
+        *out = state;
+    return code;
+}
+
+/* What is to be met by a temperature: a property along a path. */
+struct search {
+    const struct fluid *fluid;
+    double density, pressure; /* the path: constant density, or constant pressure on a branch */
+    enum fluid_phase phase;
+    double target;
+    enum { SEARCH_RHO_U, SEARCH_P_H, SEARCH_P_S } what;
+};
+
+static int search_at(const struct search *search, double temperature, struct fluid_state *state,
+                     double *miss)
+{
+    int code;
+    if (search->what == SEARCH_RHO_U)
+        code = fluid_at_rhot(search->fluid, search->density, temperature, state, NULL);
+    else
+        code = fluid_at_tp(search->fluid, temperature, search->pressure, search->phase, state,
+                           NULL);
+    if (code != 0)
+        return code;
+    double value = search->what == SEARCH_RHO_U ? state->internal_energy_j_kg
+                   : search->what == SEARCH_P_H ? state->enthalpy_j_kg
+                                                : state->entropy_j_kg_k;
+    *miss = value - search->target;
+    return 0;
+}
+
+enum { SEARCH_STEPS = 200 };
+
+/* The temperature between low and high, where the property rises: false position with the
+ * Illinois step (Dowell, Jarratt, BIT 11 (1971) 168), and halving whenever it dawdles. */
+static int search_solve(const struct search *search, double low, double high,
+                        struct fluid_state *out)
+{
+    double miss_low, miss_high, miss, width = high - low;
+    struct fluid_state state;
+    int code = search_at(search, low, &state, &miss_low);
+    if (code != 0)
+        return code;
+    if (miss_low >= 0) {
+        *out = state;
+        return miss_low <= 1e-9 * (fabs(search->target) + 1) ? 0 : ERR_RANGE;
+    }
+    code = search_at(search, high, &state, &miss_high);
+    if (code != 0)
+        return code;
+    if (miss_high <= 0) {
+        *out = state;
+        return -miss_high <= 1e-9 * (fabs(search->target) + 1) ? 0 : ERR_RANGE;
+    }
+    int side = 0;
+    for (int i = 0; i < SEARCH_STEPS; i++) {
+        double middle = (low * miss_high - high * miss_low) / (miss_high - miss_low);
+        if (i % 3 == 2) {
+            if (high - low > 0.5 * width)
+                middle = 0.5 * (low + high);
+            width = high - low;
+        }
+        code = search_at(search, middle, &state, &miss);
+        if (code != 0)
+            return code;
+        if (miss == 0 || high - low <= 4 * DBL_EPSILON * high) {
+            *out = state;
+            return 0;
+        }
+        if (miss < 0) {
+            low = middle;
+            miss_low = miss;
+            if (side == -1)
+                miss_high *= 0.5;
+            side = -1;
+        } else {
+            high = middle;
+            miss_high = miss;
+            if (side == 1)
+                miss_low *= 0.5;
+            side = 1;
+        }
+    }
+    return ERR_CONVERGE;
+}
+
+int fluid_at_rhou(const struct fluid *fluid, double density_kg_m3, double internal_energy_j_kg,
+                  struct fluid_state *out, struct error *err)
+{
+    struct search search = {
+        .fluid = fluid,
+        .density = density_kg_m3,
+        .target = internal_energy_j_kg,
+        .what = SEARCH_RHO_U,
+    };
+    /* The path ends where the validity does: a dense fluid meets the pressure limit long before
+     * the highest temperature, and the solid below some temperature. */
+    double low = fluid->limits.triple_temperature_k, high = fluid->limits.max_temperature_k,
+           miss;
+    struct fluid_state state;
+    double valid = low;
+    bool low_valid = search_at(&search, low, &state, &miss) == 0;
+    if (!low_valid || search_at(&search, high, &state, &miss) != 0) {
+        for (double t = low; t < high; t *= 1.02) {
+            bool good = search_at(&search, t, &state, &miss) == 0;
+            if (good && !low_valid) {
+                low = t;
+                low_valid = true;
+            }
+            if (good)
+                valid = t;
+            else if (low_valid)
+                break;
+        }
+        if (search_at(&search, high, &state, &miss) != 0)
+            high = valid;
+    }
+    int code = low_valid ? search_solve(&search, low, high, out) : ERR_RANGE;
+    if (code != 0)
+        return error_set(err, code,
+                         "%s: no state within the validity at %.6g kg/m3 and %.6g J/kg",
+                         fluid->name, density_kg_m3, internal_energy_j_kg);
+    return 0;
+}
+
+/* The lowest temperature at which the fluid is not solid at a pressure. */
+static double coldest(const struct fluid *fluid, double pressure)
+{
+    double low = fluid->limits.triple_temperature_k, high = fluid->limits.max_temperature_k;
+    if (validity_check(fluid, low, pressure, NULL) == 0)
+        return low;
+    for (int i = 0; i < 200 && high - low > 1e-13 * high; i++) {
+        double middle = 0.5 * (low + high);
+        if (validity_check(fluid, middle, pressure, NULL) == 0)
+            high = middle;
+        else
+            low = middle;
+    }
+    return high;
+}
+
+static int at_pressure(struct search *search, struct fluid_state *out, struct error *err)
+{
+    const struct fluid *fluid = search->fluid;
+    double low = coldest(fluid, search->pressure), high = fluid->limits.max_temperature_k;
+    bool heat = search->what == SEARCH_P_H;
+    int code = validity_check(fluid, high, search->pressure, err);
+    if (code != 0)
+        return code;
+    if (search->pressure >= fluid->limits.triple_pressure_pa &&
+        search->pressure < fluid->limits.critical_pressure_pa) {
+        struct fluid_saturation line;
+        code = fluid_saturation_at_p(fluid, search->pressure, &line, err);
+        if (code != 0)
+            return code;
+        double l = heat ? line.liquid.enthalpy_j_kg : line.liquid.entropy_j_kg_k;
+        double v = heat ? line.vapour.enthalpy_j_kg : line.vapour.entropy_j_kg_k;
+        if (search->target >= l && search->target <= v) {
+            two_phase(&line, v > l ? (search->target - l) / (v - l) : 0, out);
+            return 0;
+        }
+        search->phase = search->target < l ? FLUID_PHASE_LIQUID : FLUID_PHASE_VAPOUR;
+        if (search->phase == FLUID_PHASE_LIQUID) {
+            high = line.temperature_k;
+        } else {
+            low = line.temperature_k;
+            /* Above the critical temperature the vapour has another name. */
+            double critical = fluid->limits.critical_temperature_k * (1 - 1e-12), miss;
+            struct fluid_state state;
+            if (search_at(search, critical, &state, &miss) == 0 && miss < 0) {
+                low = fluid->limits.critical_temperature_k;
+                search->phase = FLUID_PHASE_SUPERCRITICAL;
+            } else {
+                high = critical;
+            }
+        }
+    }
+    code = search_solve(search, low, high, out);
+    if (code != 0)
+        return error_set(err, code, "%s: no state within the validity at %.6g Pa and %.6g %s",
+                         fluid->name, search->pressure, search->target,
+                         heat ? "J/kg" : "J/(kg K)");
+    return 0;
+}
+
+int fluid_at_ph(const struct fluid *fluid, double pressure_pa, double enthalpy_j_kg,
+                struct fluid_state *out, struct error *err)
+{
+    struct search search = {
+        .fluid = fluid, .pressure = pressure_pa, .target = enthalpy_j_kg, .what = SEARCH_P_H};
+    return at_pressure(&search, out, err);
+}
+
+int fluid_at_ps(const struct fluid *fluid, double pressure_pa, double entropy_j_kg_k,
+                struct fluid_state *out, struct error *err)
+{
+    struct search search = {
+        .fluid = fluid, .pressure = pressure_pa, .target = entropy_j_kg_k, .what = SEARCH_P_S};
+    return at_pressure(&search, out, err);
+}
+
+int fluid_du_dp(const struct fluid *fluid, double density_kg_m3, double pressure_pa,
+                double *du_dp_j_kg_pa, struct error *err)
+{
+    struct fluid_saturation line;
+    int code = fluid_saturation_at_p(fluid, pressure_pa, &line, err);
+    if (code != 0)
+        return code;
+    double v = 1 / density_kg_m3, v_l = 1 / line.liquid.density_kg_m3;
+    double v_v = 1 / line.vapour.density_kg_m3;
+    if (!(v >= v_l && v <= v_v) || !(v_v > v_l))
+        return error_set(err, ERR_RANGE, "%s: %.6g kg/m3 is not within two phases at %.6g Pa",
+                         fluid->name, density_kg_m3, pressure_pa);
+    /* Along the line, for each phase: drho/dT = (dp/dT|sat - dp/dT|rho) / (dp/drho|T), and
+     * du = cv dT + (p - T dp/dT|rho)/rho^2 drho. Then of the mixture at constant v. */
+    const struct fluid_state *phase[] = {&line.liquid, &line.vapour};
+    double du[2], dv[2];
+    for (int i = 0; i < 2; i++) {
+        const struct fluid_state *s = phase[i];
+        double rho = s->density_kg_m3;
+        double drho = (line.dp_dt_pa_k - s->dp_dt_pa_k) / s->dp_drho_pa_m3_kg;
+        du[i] = s->cv_j_kg_k +
+                (line.pressure_pa - line.temperature_k * s->dp_dt_pa_k) / (rho * rho) * drho;
+        dv[i] = -drho / (rho * rho);
+    }
+    double q = (v - v_l) / (v_v - v_l);
+    double dq = -(mix(dv[0], dv[1], q)) / (v_v - v_l);
+    double slope = mix(du[0], du[1], q) +
+                   dq * (line.vapour.internal_energy_j_kg - line.liquid.internal_energy_j_kg);
+    *du_dp_j_kg_pa = slope / line.dp_dt_pa_k;
+    return 0;
+}
