@@ -30,7 +30,8 @@
     X(EXCEPTION, "device refuses the address")                                                 \
     X(DEVICE_BUSY, "device says it is busy")                                                   \
     X(GATEWAY, "gateway cannot reach the device")                                              \
-    X(NOT_IN_RECORD, "not in the record")
+    X(NOT_IN_RECORD, "not in the record")                                                      \
+    X(DEVICE_FAILURE, "device reports a failure of its own")
 
 #define X(id, says) CAUSE_##id,
 enum cause { CAUSE_LIST(X) CAUSE_COUNT };
@@ -67,7 +68,8 @@ double frame_age_s(const struct frame *frame, int point);
 int register_decode(const struct register_ref *ref, const uint16_t *words,
                     double *raw) MUST_CHECK;
 /* The reverse, for the simulator and tests: rounds to the nearest count and holds it to the
- * range of the type. */
+ * range of the type. A bit of a register changes that bit alone, so words must hold the register
+ * as it stands. No number is sent as such by a float, as 0 by an integer. */
 void register_encode(const struct register_ref *ref, double raw, uint16_t *words);
 /* A raw number of a point as SI in the point's basis: raw/span map, then unit. */
 double point_from_raw(const struct point *point, double raw);
@@ -99,7 +101,9 @@ const char *link_phase_word(enum link_phase phase);
 struct link_state {
     enum link_phase phase;
     int64_t since_utc_ns;
-    uint64_t requests, answers, exceptions, timeouts, reconnects;
+    /* answers count exceptions too; late counts polls left out because the turn before them
+     * took too long. */
+    uint64_t requests, answers, exceptions, timeouts, reconnects, late;
     uint64_t bytes_sent, bytes_received;
     double latency_s, latency_worst_s; /* of the last request; worst since start */
     double jitter_s;                   /* running mean of lateness of a poll */
@@ -122,7 +126,9 @@ void field_fill(struct field *field, int64_t utc_ns, struct frame *frame,
 /* Stops and joins the threads within one timeout of the slowest link. NULL is allowed. */
 void field_close(struct field *field);
 
-/* Reads count registers of a device once, to commission a point. words must hold count. */
+/* Reads count registers (or bits) of a device once, from the reference's address on, to
+ * commission a point. words must hold count; a bit is 0 or 1. Values of the reference's type
+ * are not torn. */
 int field_inspect(const char *host, int port, int unit_id, const struct register_ref *ref,
                   int count, double timeout_s, uint16_t *words, struct error *err) MUST_CHECK;
 
