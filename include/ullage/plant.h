@@ -400,14 +400,16 @@ struct plant {
     const struct shaft *shaft;
     const struct delivery *delivery;
     const struct alarm *alarm;
-    struct arena *arena; /* owns all of the above */
+    const int *tag_by_name; /* all tags, by strcmp of their names */
+    struct arena *arena;    /* owns all of the above */
 };
 
 /* Everything that is wrong with a plant file, in order of file and line. */
 enum problem_level { PROBLEM_ERROR, PROBLEM_WARNING };
 struct problem {
     enum problem_level level;
-    struct place place;
+    char file[256]; /* printable */
+    int line;
     char text[400]; /* what is wrong and the mend; printable */
 };
 struct problems {

@@ -33,7 +33,7 @@ void verb_print_problems(const struct problems *problems)
 {
     for (int i = 0; i < problems->count; i++) {
         const struct problem *problem = &problems->at[i];
-        fprintf(stderr, "%s:%d: %s: %s\n", problem->place.file, problem->place.line,
+        fprintf(stderr, "%s:%d: %s: %s\n", problem->file, problem->line,
                 problem->level == PROBLEM_ERROR ? "error" : "warning", problem->text);
     }
     if (problems->dropped > 0)
