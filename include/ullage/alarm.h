@@ -52,7 +52,24 @@ void journal_add(struct journal_step *step, int64_t utc_ns, enum journal_kind ki
                  const char *text);
 
 /* ---- alarms --------------------------------------------------------------------------------
+ *
+ * Beyond the limit: value > high, value < low, a rate > high, a bit as named, a reading that is
+ * stale, bad or missing (ALARM_IS_BAD). Back: inside the limit by the deadband. An alarm
+ * becomes active in the first frame at which the value has been beyond the limit for on_delay
+ * without a break, and returns in the first at which it has been back for off_delay; frame time
+ * decides.
+ *
+ * Doubt may raise an alarm and never clears one. A reading, or a hall's oxygen, that is only
+ * uncertain still makes its alarm active (a low reading is never hidden), but neither returns
+ * it nor counts as normal. Any other derived quantity must be good. An input that is not usable
+ * moves nothing. In all these cases the alarm is unknown and pending times are dropped.
+ *
+ * Rates are slopes of a least-squares line whose weights fade with ALARM_RATE_TIME_S (or five
+ * frames if that is longer); they are unknown until the readings reach back half of that. A
+ * rate's limit and deadband are SI per second.
  */
+
+enum { ALARM_RATE_TIME_S = 20 };
 
 enum alarm_phase {
     ALARM_NORMAL,
@@ -64,16 +81,11 @@ const char *alarm_phase_word(enum alarm_phase phase);
 
 struct alarm_state {
     enum alarm_phase phase;
-    bool unknown;          /* its source is not good: neither active nor normal can be told */
-    int64_t since_utc_ns;  /* of the present phase */
+    bool unknown;          /* its source is not good: that it is normal cannot be told */
+    int64_t since_utc_ns;  /* of the present phase; never later than the last frame */
     int64_t active_utc_ns; /* when it last became active; 0 never */
     double value;          /* of the watched tag when it last became active, SI */
-    char user[32];         /* who acknowledged */
-    /* for the step only: */
-    int64_t pending_utc_ns; /* since when the condition has stood (or been gone); 0: not */
-    bool pending_on;
-    double last_value;
-    int64_t last_utc_ns;
+    char user[32];         /* who acknowledged the last activation; empty: nobody yet */
 };
 
 /* The watched quantity of one alarm at this frame, SI in the basis of the alarm's limits. */
@@ -82,21 +94,26 @@ struct alarm_input {
 };
 
 struct alarm_set;
+/* All memory is taken here. plant must outlive the set. ERR_CONFIG with the place of an alarm
+ * that could never act or never return, ERR_MEMORY. */
 int alarm_set_create(const struct plant *plant, struct alarm_set **out,
                      struct error *err) MUST_CHECK;
 void alarm_set_free(struct alarm_set *set);
-/* One frame. input has one entry per alarm of the plant. An input that is not usable makes its
- * alarm unknown and moves no phase (except ALARM_IS_BAD, whose business it is). */
+/* One frame. input has one entry per alarm of the plant. A time before the last frame's
+ * restarts pending times and rates. Entries that find no room in the journal wait for the next
+ * step in order; 64 places stay free for the banners. */
 void alarm_step(struct alarm_set *set, int64_t utc_ns, const struct alarm_input *input,
                 struct journal_step *journal);
 /* An acknowledgement by a user. 0, or ERR_ARGUMENT with the reason (nothing to acknowledge). */
 int alarm_acknowledge(struct alarm_set *set, int alarm, int64_t utc_ns, const char *user,
                       struct journal_step *journal, struct error *err);
+/* NULL for an index that is none of the plant's alarms. */
 const struct alarm_state *alarm_state(const struct alarm_set *set, int alarm);
 /* Active or returned, and not acknowledged. */
 int alarm_unacknowledged(const struct alarm_set *set);
-/* Order for lists: unacknowledged before acknowledged before normal, then priority, then
- * newest. Writes indices of all alarms into order. */
+/* Order for lists: unacknowledged before acknowledged before normal but unknown before normal,
+ * then priority, then newest, then the plant file's order. Writes indices of all alarms into
+ * order. */
 void alarm_order(const struct alarm_set *set, int *order);
 
 /* ---- banners -------------------------------------------------------------------------------
@@ -105,12 +122,24 @@ void alarm_order(const struct alarm_set *set, int *order);
 enum banner_level { BANNER_DANGER, BANNER_CAUTION, BANNER_NOTE };
 const char *banner_level_word(enum banner_level level);
 
+enum banner_cause {
+    BANNER_OXYGEN_LOW,     /* a reading below an action level */
+    BANNER_OXYGEN_DOUBT,   /* was below, and a monitor has been lost since */
+    BANNER_OXYGEN_UNKNOWN, /* no monitor of the hall is usable */
+    BANNER_MONITOR_LOST,   /* some are */
+    BANNER_NO_MONITOR,     /* the plant file gives the hall none */
+    BANNER_ALARM
+};
+
 /* A standing safety statement. */
 struct banner {
     enum banner_level level;
     int64_t since_utc_ns;
     char subject[64]; /* hall, link or alarm it speaks of */
-    char text[320];   /* in the site's own words where it gave them */
+    char text[320];   /* in the site's own words where it gave them; printable */
+    enum banner_cause cause;
+    int index;        /* of the hall or alarm */
+    int action_level; /* of the hall: the lowest one passed, or -1 */
 };
 
 /* The state of one hall, as the banners need it. */
@@ -120,17 +149,21 @@ struct hall_safety {
     double oxygen_lowest; /* mole fraction, of the usable ones */
     double u_oxygen_lowest;
     int lowest_point; /* tag of that monitor, or -1 */
+    unsigned lost;    /* bit i: the hall's oxygen.at[i] is not good now */
 };
 
 enum { BANNER_MAX = 32 };
 struct banner_list {
     int count; /* most serious first */
+    int more;  /* stand as well, less serious, beyond the room of the list */
     struct banner at[BANNER_MAX];
 };
 /* Composes the standing banners: oxygen below an action level (never softened by uncertainty:
  * the reading decides), oxygen unknown, alarms with banner = yes that are active or unknown.
- * Those that stood before keep their since. hall has one entry per hall. Changes are written to
- * the journal as shown and cleared. */
+ * A banner stands as long as its cause; acknowledging never clears it. Oxygen counts as back at
+ * 0.1 % above the level, and only while every monitor of the hall is good. Those that stood
+ * before keep their since. hall has one entry per hall. Changes are written to the journal as
+ * shown and cleared. Start with a zeroed list. */
 void banner_step(struct banner_list *list, const struct plant *plant,
                  const struct alarm_set *set, const struct hall_safety *hall, int64_t utc_ns,
                  struct journal_step *journal);
