@@ -66,7 +66,8 @@ void journal_add(struct journal_step *step, int64_t utc_ns, enum journal_kind ki
  *
  * Rates are slopes of a least-squares line whose weights fade with ALARM_RATE_TIME_S (or five
  * frames if that is longer); they are unknown until the readings reach back half of that. A
- * rate's limit and deadband are SI per second.
+ * rate's limit is SI per second; its deadband, a span, counts over that time, at most half of
+ * the limit.
  */
 
 enum { ALARM_RATE_TIME_S = 20 };

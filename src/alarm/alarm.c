@@ -15,6 +15,7 @@
 /* One alarm's own life. */
 struct watch {
     struct alarm_state state;
+    double deadband; /* SI per second for rates */
     int64_t on_delay_ns, off_delay_ns;
     int64_t pending_utc_ns; /* with pending: since when what moves the phase has stood */
     bool pending;
@@ -77,6 +78,8 @@ static int alarm_check(const struct plant *plant, const struct alarm *alarm, str
         wrong = "needs a priority of 1 to 4";
     else if (!isfinite(alarm->low) || !isfinite(alarm->high))
         wrong = "needs limits that are numbers";
+    else if (alarm_is_rate(alarm) && !(alarm->high > 0))
+        wrong = "needs a rate above zero";
     else if (alarm->condition == ALARM_OUTSIDE && !(alarm->low < alarm->high))
         wrong = "needs its lower limit first";
     else if (alarm->condition == ALARM_OUTSIDE &&
@@ -94,6 +97,14 @@ static int64_t delay_ns(double delay_s)
 {
     const double longest_s = 100 * 365.25 * 86400;
     return time_s_to_ns(fmin(delay_s, longest_s));
+}
+
+/* The file gives a span; for a rate it counts over the time of the fit. A reading that stands
+ * still must always count as back. */
+static double deadband_of(const struct alarm *alarm, double rate_time_s)
+{
+    return alarm_is_rate(alarm) ? fmin(alarm->deadband / rate_time_s, alarm->high / 2)
+                                : alarm->deadband;
 }
 
 static bool doubt_raises(const struct plant *plant, int tag)
@@ -126,6 +137,7 @@ int alarm_set_create(const struct plant *plant, struct alarm_set **out, struct e
     for (size_t i = 0; i < count; i++) {
         const struct alarm *alarm = &plant->alarm[i];
         struct watch *watch = &set->watch[i];
+        watch->deadband = deadband_of(alarm, set->rate_time_s);
         watch->on_delay_ns = delay_ns(alarm->on_delay_s);
         watch->off_delay_ns = delay_ns(alarm->off_delay_s);
         watch->doubt_raises = doubt_raises(plant, alarm->watch);
@@ -160,19 +172,19 @@ static enum verdict verdict_low(double value, double low, double deadband)
     return value >= low + deadband ? VERDICT_BACK : VERDICT_BETWEEN;
 }
 
-static enum verdict verdict_of(const struct alarm *alarm, double value)
+static enum verdict verdict_of(const struct alarm *alarm, double deadband, double value)
 {
     switch (alarm->condition) {
     case ALARM_ABOVE:
     case ALARM_RISING_FASTER:
-        return verdict_high(value, alarm->high, alarm->deadband);
+        return verdict_high(value, alarm->high, deadband);
     case ALARM_FALLING_FASTER:
-        return verdict_high(-value, alarm->high, alarm->deadband);
+        return verdict_high(-value, alarm->high, deadband);
     case ALARM_BELOW:
-        return verdict_low(value, alarm->low, alarm->deadband);
+        return verdict_low(value, alarm->low, deadband);
     case ALARM_OUTSIDE: {
-        enum verdict high = verdict_high(value, alarm->high, alarm->deadband);
-        enum verdict low = verdict_low(value, alarm->low, alarm->deadband);
+        enum verdict high = verdict_high(value, alarm->high, deadband);
+        enum verdict low = verdict_low(value, alarm->low, deadband);
         if (high == VERDICT_BEYOND || low == VERDICT_BEYOND)
             return VERDICT_BEYOND;
         return high == VERDICT_BACK && low == VERDICT_BACK ? VERDICT_BACK : VERDICT_BETWEEN;
@@ -213,7 +225,7 @@ static struct judgement judge(struct watch *watch, const struct alarm *alarm, st
             return found;
         }
     }
-    found.verdict = verdict_of(alarm, found.quantity.value);
+    found.verdict = verdict_of(alarm, watch->deadband, found.quantity.value);
     bool raises = found.verdict == VERDICT_BEYOND && watch->doubt_raises;
     if (q.quality == QUALITY_UNCERTAIN && !raises)
         found.verdict = VERDICT_UNKNOWN;

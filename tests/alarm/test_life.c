@@ -636,6 +636,8 @@ int main(void)
             test_an_uncertain_balance_raises_nothing_but_low_oxygen_is_never_hidden),
         cmocka_unit_test(test_a_rate_acts_on_a_ramp_of_that_slope_at_any_frame_spacing),
         cmocka_unit_test(
+            test_a_rate_returns_by_its_deadband_and_always_when_the_reading_stands_still),
+        cmocka_unit_test(
             test_a_rate_is_unknown_again_after_a_lost_reading_a_gap_and_a_clock_step),
         cmocka_unit_test(test_delays_end_at_the_very_frame),
         cmocka_unit_test(test_a_break_starts_a_delay_again),
