@@ -342,6 +342,32 @@ static void test_a_rate_acts_on_a_ramp_of_that_slope_at_any_frame_spacing(void *
 }
 
 static void
+test_a_rate_returns_by_its_deadband_and_always_when_the_reading_stands_still(void **unused)
+{
+    (void)unused;
+    for (int wide = 0; wide < 2; wide++) {
+        struct rig rig;
+        rig_init(&rig);
+        struct alarm *alarm = rig_alarm(&rig, "a");
+        alarm->condition = ALARM_RISING_FASTER;
+        alarm->high = 10;
+        alarm->deadband = wide ? 500 : 40; /* Pa over 20 s: held to 5 Pa/s, or 2 Pa/s */
+        rig_start(&rig);
+        double value = 0;
+        for (int k = 0; k < 30; k++)
+            rig_feed(&rig, 1, value += 11);
+        assert_int_equal(rig_phase(&rig), ALARM_ACTIVE);
+        for (int k = 0; k < 300; k++) /* settles to a slope inside the deadband */
+            rig_feed(&rig, 1, value += 9);
+        assert_int_equal(rig_phase(&rig), ALARM_ACTIVE);
+        for (int k = 0; k < 300; k++)
+            rig_feed(&rig, 1, value);
+        assert_int_equal(rig_phase(&rig), ALARM_RETURNED);
+        rig_done(&rig);
+    }
+}
+
+static void
 test_a_rate_is_unknown_again_after_a_lost_reading_a_gap_and_a_clock_step(void **unused)
 {
     (void)unused;
