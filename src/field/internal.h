@@ -89,6 +89,7 @@ struct reading {
     enum cause waiting;   /* why no newer word has come though the link is up, or CAUSE_NONE */
 };
 
+/* The phase's start and the next try, by the monotonic clock. */
 struct phase_times {
     int64_t since_mono_ns, retry_mono_ns;
 };
@@ -119,6 +120,12 @@ struct part {
     int64_t probe_mono_ns;
 };
 
+/* Keeps a link that comes and goes from filling the log. */
+struct log_gate {
+    int64_t window_mono_ns;
+    unsigned lines, held;
+};
+
 struct worker {
     const struct plant *plant;
     const struct link *link;
@@ -140,7 +147,12 @@ struct worker {
     struct reading *reading;
     struct link_state state;
     struct phase_times times;
-    bool settled, stray;
+    bool settled, connected_before;
+    bool answered;  /* some request of this turn was */
+    int first_part; /* where the next turn begins */
+    unsigned tries; /* since the link went down */
+    int64_t remind_mono_ns;
+    struct log_gate gate;
     uint64_t random;
 
     struct slot slot;
@@ -148,8 +160,11 @@ struct worker {
 
 /* Plans the requests of a worker afresh. */
 void poll_plan(struct worker *worker);
-/* One turn: asks for every part. 0; or a negative code with err when the connection can no
- * longer be trusted. What was read before stands in the readings either way. */
+/* poll_turn broke off because the field closes. Modbus has no such exception. */
+enum { POLL_STOPPED = 256 };
+/* One turn: asks for every part. 0; POLL_STOPPED; or a negative code with err when the
+ * connection can no longer be trusted. What was read before stands in the readings either way.
+ */
 int poll_turn(struct worker *worker, struct error *err) MUST_CHECK;
 /* The thread: polls until stop_fd becomes readable. */
 void *link_run(void *context);
