@@ -13,6 +13,7 @@
 #include <stdbool.h>
 #include <stddef.h>
 #include <stdint.h>
+#include <stdio.h>
 
 #define PRINTF_LIKE(fmt, args) __attribute__((format(printf, fmt, args)))
 #define MUST_CHECK __attribute__((warn_unused_result))
@@ -230,5 +231,32 @@ void log_set_level(enum log_level level);
  * from any thread. NULL restores stderr. */
 typedef void log_sink(enum log_level level, const char *line, void *context);
 void log_set_sink(log_sink *sink, void *context);
+
+/* ---- CSV -----------------------------------------------------------------------------------
+ *
+ * RFC 4180, read tolerantly: any line ending, a byte order mark, white space around fields; empty
+ * lines and lines that begin with '#' are skipped. A row holds at most CSV_ROW_MAX bytes and
+ * CSV_FIELDS_MAX fields.
+ */
+
+enum { CSV_ROW_MAX = 1 << 20, CSV_FIELDS_MAX = 1 << 14 };
+
+struct csv;
+/* Reads from file, which stays the caller's. NULL: no memory. */
+struct csv *csv_create(FILE *file);
+void csv_free(struct csv *csv);
+/* The next row: 1; 0 at the end; ERR_FORMAT with the line and what is wrong with it (the next
+ * call goes on after that line); ERR_IO, ERR_MEMORY. */
+int csv_read(struct csv *csv, struct error *err) MUST_CHECK;
+int csv_count(const struct csv *csv); /* fields of the row */
+/* A field of the row until the next csv_read; "" beyond its end. Not made printable. */
+const char *csv_field(const struct csv *csv, int index);
+long csv_line(const struct csv *csv); /* at which the row begins, from 1 */
+/* The field of the row with this text, upper or lower case; -1: none. */
+int csv_find(const struct csv *csv, const char *name);
+/* Writes a field, quoted where it must be. */
+void csv_write(FILE *file, const char *text);
+/* The shortest decimal text that reads back as the same double. size >= 25. */
+void csv_number(char *dst, size_t size, double value);
 
 #endif
