@@ -160,12 +160,12 @@ static void test_numbers_are_short_and_read_back_bit_for_bit(void **unused)
         double value;
         const char *text;
     } table[] = {
-        {0.1,       "0.1"              },
-        {1e5,       "100000"           },
-        {1.0 / 3,   "0.333333333333333"
-                  "31"},
-        {-2.5e-300, "-2.5e-300"        },
-        {0,         "0"                }
+        {0.1,       "0.1"                },
+        {1e5,       "100000"             },
+        {1.0 / 3,   "0.3333333333333333" },
+        {0.1 + 0.2, "0.30000000000000004"},
+        {-2.5e-300, "-2.5e-300"          },
+        {0,         "0"                  }
     };
     for (size_t i = 0; i < ARRAY_LENGTH(table); i++) {
         char text[40];
