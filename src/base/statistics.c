@@ -15,8 +15,8 @@ double statistics_normal_cdf(double z)
 
 double statistics_normal_quantile(double p)
 {
-    /* Bracketed by bisection of the cdf, then polished by Newton's step: no table, no fit. 80
-     * halvings of a span of 80 reach a double's spacing. */
+    /* By bisection of the cdf: no table, no fit. 80 halvings of a span of 80 reach a double's
+     * spacing. */
     double low = -40, high = 40;
     for (int i = 0; i < 80; i++) {
         double middle = 0.5 * (low + high);

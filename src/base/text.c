@@ -146,8 +146,13 @@ static char lower(char c)
 
 size_t text_distance(const char *a, const char *b)
 {
-    /* Optimal string alignment (Levenshtein 1966 with Damerau's swap). Names are short: what
-     * lies beyond DISTANCE_MAX characters counts by length alone. */
+    /* Optimal string alignment (Levenshtein 1966 with Damerau's swap). A common start costs
+     * nothing. Names are short: after it, what lies beyond DISTANCE_MAX characters counts by
+     * length alone. */
+    while (*a != '\0' && lower(*a) == lower(*b)) {
+        a++;
+        b++;
+    }
     size_t la = strnlen(a, DISTANCE_MAX), lb = strnlen(b, DISTANCE_MAX);
     size_t rows[3][DISTANCE_MAX + 1];
     size_t *before = rows[0], *above = rows[1], *now = rows[2];

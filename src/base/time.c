@@ -147,9 +147,10 @@ static bool parse_clock(const char **s, struct moment *m)
     if (!one_of(s, "Tt ") || !digits(s, 2, &m->hour) || !one_of(s, ":") ||
         !digits(s, 2, &m->minute))
         return false;
-    if (one_of(s, ":") && !digits(s, 2, &m->second))
+    bool seconds = one_of(s, ":");
+    if (seconds && !digits(s, 2, &m->second))
         return false;
-    if (one_of(s, ".,")) {
+    if (seconds && one_of(s, ".,")) {
         int64_t unit_ns = NS_PER_S / 10;
         if (!isdigit((unsigned char)**s))
             return false;
