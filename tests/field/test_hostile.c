@@ -100,7 +100,8 @@ static void test_no_bad_answer_is_ever_shown_and_every_link_recovers(void **stat
         /* the last good value stays, and is no newer than it was */
         assert_true(rig.sample[i].value == 111);
         if (i > FAKE_TOLERATED) {
-            assert_true(frame_age_s(&rig.frame, i) > 0.3);
+            /* the first of its two answers is right and may be shown */
+            assert_true(i == FAKE_TWICE || frame_age_s(&rig.frame, i) > 0.3);
             assert_true(rig.state[i].trouble[0] != '\0');
             assert_true(rig.state[i].retry_s <= 15);
             print_message("mode %d: %s\n", i, rig.state[i].trouble);
