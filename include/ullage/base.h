@@ -93,7 +93,7 @@ void time_format(char *dst, size_t size, int64_t utc_ns, int decimals);
 int time_parse(const char *text, int64_t *utc_ns, struct error *err) MUST_CHECK;
 /* "20s", "10min", "4h", "90d", "400 ms": a positive span in seconds. 0 or ERR_FORMAT. */
 int time_parse_span(const char *text, double *span_s, struct error *err) MUST_CHECK;
-/* A span for people, at most two parts: "31 min", "2 d 4 h", "4 min 10 s", "850 ms". */
+/* A span for people, at most two parts: "31 h", "2 d 4 h", "4 min 10 s", "850 ms". */
 void time_format_span(char *dst, size_t size, double span_s);
 
 /* ---- units ---------------------------------------------------------------------------------

@@ -222,7 +222,7 @@ void time_format_span(char *dst, size_t size, double span_s)
         snprintf(dst, size, "%s%.0f s", sign, s);
     else if (s < 3600 - 30)
         two_parts(dst, size, sign, s, 60, s < 600, "min", "s");
-    else if (s < 86400 - 30 * 60)
+    else if (s < 2 * 86400 - 30 * 60) /* 31 h says more than 1 d 7 h to who plans a shift */
         two_parts(dst, size, sign, s / 60, 60, s < 36000, "h", "min");
     else
         two_parts(dst, size, sign, s / 3600, 24, s < 864000, "d", "h");

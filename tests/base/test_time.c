@@ -211,7 +211,7 @@ static void test_spans_print_in_two_parts_at_most(void **state)
         double span_s;
         const char *text;
     } rows[] = {
-        {31 * 60,           "31 min"          },
+        {31 * 3600.0,       "31 h"            },
         {2 * 86400 + 14400, "2 d 4 h"         },
         {250,               "4 min 10 s"      },
         {0.85,              "850 ms"          },
@@ -222,7 +222,8 @@ static void test_spans_print_in_two_parts_at_most(void **state)
         {3599,              "1 h"             },
         {3600,              "1 h"             },
         {5400,              "1 h 30 min"      },
-        {86399,             "1 d"             },
+        {86399,             "24 h"            },
+        {2 * 86400 - 1,     "2 d"             },
         {90 * 86400.0,      "90 d"            },
         {-250,              "-4 min 10 s"     },
         {1e300,             "over 10000 years"},
