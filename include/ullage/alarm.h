@@ -161,6 +161,7 @@ struct banner_list {
 };
 /* Composes the standing banners: oxygen below an action level (never softened by uncertainty:
  * the reading decides), oxygen unknown, alarms with banner = yes that are active or unknown.
+ * An unknown alarm on a hall's oxygen has no banner of its own where the hall's speaks of it.
  * A banner stands as long as its cause; acknowledging never clears it. Oxygen counts as back at
  * 0.1 % above the level, and only while every monitor of the hall is good. Those that stood
  * before keep their since. hall has one entry per hall. Changes are written to the journal as

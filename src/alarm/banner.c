@@ -173,11 +173,31 @@ static bool alarm_stands(const struct alarm_state *state)
     return state->phase == ALARM_ACTIVE || state->phase == ALARM_ACKNOWLEDGED;
 }
 
+/* Whether a hall's own statement about its monitors tells already that this tag is not good. */
+static bool hall_speaks_of(const struct plant *plant, const struct hall_safety *safety, int tag)
+{
+    const struct derived *derived =
+        plant_tag_is_point(plant, tag) ? NULL : &plant->derived[tag - plant->point_count];
+    for (int h = 0; h < plant->hall_count; h++) {
+        const struct hall *hall = &plant->hall[h];
+        if (safety[h].known || hall->oxygen.count == 0)
+            continue;
+        if (derived != NULL && derived->id == DERIVED_HALL_OXYGEN_LOWEST && derived->thing == h)
+            return true;
+        for (int i = 0; i < hall->oxygen.count; i++)
+            if (hall->oxygen.at[i].kind == REF_TAG && hall->oxygen.at[i].tag == tag)
+                return true;
+    }
+    return false;
+}
+
 static void alarm_statement(struct statement_list *list, const struct plant *plant, int index,
-                            const struct alarm_state *state)
+                            const struct alarm_state *state, const struct hall_safety *hall)
 {
     const struct alarm *alarm = &plant->alarm[index];
     if (!alarm->banner || (!alarm_stands(state) && !state->unknown))
+        return;
+    if (!alarm_stands(state) && hall_speaks_of(plant, hall, alarm->watch))
         return;
     bool danger = alarm->priority == 1;
     struct statement statement = {
@@ -323,8 +343,9 @@ static void alarm_text(struct banner *banner, const struct plant *plant,
     describe_limit(limit, sizeof(limit), plant, alarm);
     const char *tag = plant_tag_name(plant, alarm->watch);
     if (!alarm_stands(state))
-        text_format(head, sizeof(head), "%s CANNOT BE TOLD: %.60s is not good.",
-                    banner->subject, tag);
+        text_format(head, sizeof(head), "%s CANNOT BE TOLD: %s%.60s is not %s.",
+                    banner->subject, alarm_is_rate(alarm) ? "the rate of " : "", tag,
+                    alarm_is_rate(alarm) ? "known" : "good");
     else
         text_format(head, sizeof(head), "%s: %.60s %s%s.", banner->subject, tag, limit,
                     state->unknown ? ", and no longer good" : "");
@@ -410,7 +431,7 @@ void banner_step(struct banner_list *list, const struct plant *plant,
     for (int i = 0; i < plant->hall_count; i++)
         hall_statements(&found, plant, i, &hall[i], &before);
     for (int i = 0; i < plant->alarm_count; i++)
-        alarm_statement(&found, plant, i, alarm_state(set, i));
+        alarm_statement(&found, plant, i, alarm_state(set, i), hall);
 
     list->count = found.count;
     list->more = found.more;

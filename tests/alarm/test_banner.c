@@ -321,6 +321,56 @@ static void test_a_banner_alarm_that_cannot_be_told_is_shown_as_such(void **unus
     rig_done(&scene.rig);
 }
 
+static void test_a_lost_monitor_is_told_once_also_when_a_danger_alarm_watches_it(void **unused)
+{
+    (void)unused;
+    static struct scene scene;
+    scene_init(&scene);
+    static const int watch[] = {OXYGEN_LOWEST, AT_403};
+    for (int i = 0; i < 2; i++) {
+        struct alarm *alarm = rig_alarm(&scene.rig, i == 0 ? "oxygen-low" : "platform-low");
+        alarm->watch = watch[i];
+        alarm->condition = ALARM_BELOW;
+        alarm->low = 0.195;
+        alarm->limit_gauge = false;
+        alarm->deadband = 0;
+        alarm->priority = 1;
+        alarm->banner = true;
+    }
+    rig_start(&scene.rig);
+    scene.rig.input[0].quantity = (struct quantity){0.207, 0.001, QUALITY_UNCERTAIN};
+    scene.rig.input[1].quantity = quantity_none(QUALITY_BAD);
+    scene.hall[0] = hall_reads(0.207);
+    scene.hall[0].known = false;
+    scene.hall[0].lost = 4;
+    scene_step(&scene);
+    assert_int_equal(scene.list.count, 1);
+    expect_starts(&scene, 0, BANNER_CAUTION, "OXYGEN MONITOR NOT GOOD IN cold-hall: AT-403.");
+    /* Active, the alarm speaks for itself. */
+    scene.rig.input[0].quantity.value = scene.hall[0].oxygen_lowest = 0.19;
+    scene_step(&scene);
+    assert_int_equal(scene.list.count, 3);
+    expect_starts(&scene, 0, BANNER_DANGER, "OXYGEN BELOW 19.5 %");
+    expect_starts(&scene, 1, BANNER_DANGER, "oxygen-low: ");
+    rig_done(&scene.rig);
+}
+
+static void test_a_banner_rate_that_is_not_known_yet_says_so(void **unused)
+{
+    (void)unused;
+    static struct scene scene;
+    scene_init(&scene);
+    struct alarm *alarm = rig_alarm(&scene.rig, "pressure-rising");
+    alarm->condition = ALARM_RISING_FASTER;
+    alarm->high = 10;
+    alarm->banner = true;
+    rig_start(&scene.rig);
+    scene_step(&scene);
+    assert_string_equal(scene.list.at[0].text,
+                        "pressure-rising CANNOT BE TOLD: the rate of PT-101 is not known.");
+    rig_done(&scene.rig);
+}
+
 static void test_the_most_serious_stands_first_and_equals_keep_the_files_order(void **unused)
 {
     (void)unused;
@@ -475,6 +525,8 @@ int main(void)
         cmocka_unit_test(test_losing_the_low_monitor_does_not_make_a_hall_look_better),
         cmocka_unit_test(test_a_banner_alarm_stands_with_its_cause_whether_acknowledged_or_not),
         cmocka_unit_test(test_a_banner_alarm_that_cannot_be_told_is_shown_as_such),
+        cmocka_unit_test(test_a_lost_monitor_is_told_once_also_when_a_danger_alarm_watches_it),
+        cmocka_unit_test(test_a_banner_rate_that_is_not_known_yet_says_so),
         cmocka_unit_test(test_the_most_serious_stands_first_and_equals_keep_the_files_order),
         cmocka_unit_test(test_more_than_the_list_holds_keeps_the_serious_and_counts_the_rest),
         cmocka_unit_test(
