@@ -234,9 +234,9 @@ void log_set_sink(log_sink *sink, void *context);
 
 /* ---- CSV -----------------------------------------------------------------------------------
  *
- * RFC 4180, read tolerantly: any line ending, a byte order mark, white space around fields; empty
- * lines and lines that begin with '#' are skipped. A row holds at most CSV_ROW_MAX bytes and
- * CSV_FIELDS_MAX fields.
+ * RFC 4180, read tolerantly: any line ending, a byte order mark, white space around fields;
+ * empty lines and lines that begin with '#' are skipped. A row holds at most CSV_ROW_MAX bytes
+ * and CSV_FIELDS_MAX fields.
  */
 
 enum { CSV_ROW_MAX = 1 << 20, CSV_FIELDS_MAX = 1 << 14 };
