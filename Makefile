@@ -47,6 +47,10 @@ MAN       := $(sort $(wildcard docs/*.[1-8]))
 FACES     := $(filter-out include/ullage/screen.h,$(sort $(wildcard include/ullage/*.h)))
 FORMATTED := $(sort $(wildcard src/*/*.[ch] include/ullage/*.h tests/*.h tests/*/*.[ch]))
 
+# 'make V=1' shows the whole commands.
+Q   = $(if $(V),,@)
+say = $(if $(V),,@printf '  %-4s %s\n' '$(1)' '$(2)')
+
 obj     = $(patsubst %.c,$(BUILD)/%.o,$(1))
 TESTS   := $(patsubst %.c,$(BUILD)/%,$(TEST_SRC))
 BENCHES := $(patsubst %.c,$(BUILD)/%,$(BENCH_SRC))
@@ -61,24 +65,30 @@ wanted  = $(and $(if $(ROOMS),$(filter $(ROOMS),$(1)),yes),$(if $(filter $(WITHO
 all: $(BUILD)/ullage ## build the program
 
 $(BUILD)/ullage: $(call obj,$(APP_SRC)) $(BUILD)/libullage.a
-	$(CC) $(ALL_CFLAGS) $(ALL_LDFLAGS) -o $@ $^ $(LIBS)
+	$(call say,ld,$@)
+	$(Q)$(CC) $(ALL_CFLAGS) $(ALL_LDFLAGS) -o $@ $^ $(LIBS)
 
 $(BUILD)/libullage.a: $(call obj,$(LIB_SRC))
+	$(call say,ar,$@)
 	@rm -f $@
-	$(AR) rcs $@ $^
+	$(Q)$(AR) rcs $@ $^
 
 # Tests may reach the screen room as well as the library; never the verbs.
 $(BUILD)/libscreen.a: $(call obj,$(filter src/screen/%,$(APP_SRC)))
+	$(call say,ar,$@)
 	@rm -f $@
-	$(AR) rcs $@ $^
+	$(Q)$(AR) rcs $@ $^
 $(TESTS): $(BUILD)/%: $(BUILD)/%.o $(BUILD)/libscreen.a $(BUILD)/libullage.a
-	$(CC) $(ALL_CFLAGS) $(ALL_LDFLAGS) -o $@ $^ $(TEST_LIBS) $(LIBS)
+	$(call say,ld,$@)
+	$(Q)$(CC) $(ALL_CFLAGS) $(ALL_LDFLAGS) -o $@ $^ $(TEST_LIBS) $(LIBS)
 $(BENCHES): $(BUILD)/%: $(BUILD)/%.o $(BUILD)/libscreen.a $(BUILD)/libullage.a
-	$(CC) $(ALL_CFLAGS) $(ALL_LDFLAGS) -o $@ $^ $(LIBS)
+	$(call say,ld,$@)
+	$(Q)$(CC) $(ALL_CFLAGS) $(ALL_LDFLAGS) -o $@ $^ $(LIBS)
 
 $(BUILD)/%.o: %.c $(BUILD)/flags
 	@mkdir -p $(@D)
-	$(CC) $(ALL_CPPFLAGS) $(ALL_CFLAGS) -MMD -MP -c -o $@ $<
+	$(call say,cc,$<)
+	$(Q)$(CC) $(ALL_CPPFLAGS) $(ALL_CFLAGS) -MMD -MP -c -o $@ $<
 
 # Other flags or another compiler make every object anew.
 $(BUILD)/flags: export FLAGS = $(CC) $(ALL_CPPFLAGS) $(ALL_CFLAGS)
