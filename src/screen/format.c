@@ -52,20 +52,9 @@ struct unit shown_unit(const struct unit *own, double magnitude_si)
     return unit;
 }
 
-/* Decimals for a value without an uncertainty: four significant digits. */
-static int plain_decimals(double shown)
-{
-    double magnitude = fabs(shown);
-    if (!(magnitude > 0))
-        return 0;
-    int decimals = 3 - (int)floor(log10(magnitude));
-    return decimals < 0 ? 0 : decimals > 6 ? 6 : decimals;
-}
-
 static int decimals_of(struct quantity q, const struct unit *unit)
 {
-    return quantity_decimals(unit_span_from_si(unit, q.u),
-                             plain_decimals(unit_from_si(unit, q.value)));
+    return quantity_decimals(unit_span_from_si(unit, q.u), 3);
 }
 
 void format_value(char *dst, size_t size, struct quantity q, const struct unit *unit)
@@ -79,6 +68,10 @@ void format_value(char *dst, size_t size, struct quantity q, const struct unit *
         return;
     }
     double shown = unit_from_si(unit, q.value);
+    if (!(q.u > 0)) { /* a constant of the plant file: as it was written there */
+        text_format(dst, size, "%.6g", shown);
+        return;
+    }
     int decimals = decimals_of(q, unit);
     /* A minus before what rounds to nothing says nothing. */
     if (fabs(shown) < 0.5 * pow(10, -decimals))
@@ -89,7 +82,7 @@ void format_value(char *dst, size_t size, struct quantity q, const struct unit *
 static void with_mark(char *dst, size_t size, enum quality quality)
 {
     size_t length = strlen(dst);
-    if (quality != QUALITY_GOOD && length + 3 < size)
+    if (quality != QUALITY_GOOD && strcmp(dst, "--") != 0 && length + 3 < size)
         text_format(dst + length, size - length, " %c", quality_mark(quality));
 }
 
@@ -104,19 +97,35 @@ void format_plain(char *dst, size_t size, struct quantity q, const struct unit *
     with_mark(dst, size, q.quality);
 }
 
-void format_quantity(char *dst, size_t size, struct quantity q, const struct unit *own)
+static void value_and_u(char *dst, size_t size, struct quantity q, struct unit unit)
 {
-    if (!quantity_usable(q) || !(q.u > 0)) {
-        format_plain(dst, size, q, own);
-        return;
-    }
-    double magnitude = fabs(q.value) > q.u ? q.value : q.u;
-    struct unit unit = shown_unit(own, magnitude);
     char value[48];
     format_value(value, sizeof(value), q, &unit);
     const char *symbol = strcmp(unit.symbol, "1") == 0 ? "" : unit.symbol;
     text_format(dst, size, "%s ± %.*f%s%s", value, decimals_of(q, &unit),
                 unit_span_from_si(&unit, q.u), *symbol != '\0' ? " " : "", symbol);
+    with_mark(dst, size, q.quality);
+}
+
+void format_quantity(char *dst, size_t size, struct quantity q, const struct unit *own)
+{
+    double magnitude = fabs(q.value) > q.u ? q.value : q.u;
+    if (!quantity_usable(q) || !(q.u > 0))
+        format_plain(dst, size, q, own);
+    else
+        value_and_u(dst, size, q, shown_unit(own, magnitude));
+}
+
+void format_reading(char *dst, size_t size, struct quantity q, const struct unit *own)
+{
+    if (quantity_usable(q) && q.u > 0) {
+        value_and_u(dst, size, q, *own);
+        return;
+    }
+    char value[48];
+    format_value(value, sizeof(value), q, own);
+    bool bare = strcmp(value, "--") == 0 || own->dimension == DIMENSION_BIT;
+    text_format(dst, size, "%s%s%s", value, bare ? "" : " ", bare ? "" : own->symbol);
     with_mark(dst, size, q.quality);
 }
 

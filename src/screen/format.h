@@ -14,6 +14,8 @@ struct unit shown_unit(const struct unit *own, double magnitude_si);
 void format_value(char *dst, size_t size, struct quantity q, const struct unit *unit);
 /* "5.39 ± 0.13 kW", with the quality's mark behind when it is not good; "--" if not usable. */
 void format_quantity(char *dst, size_t size, struct quantity q, const struct unit *own);
+/* The same in the unit of its own, as an instrument tells it. */
+void format_reading(char *dst, size_t size, struct quantity q, const struct unit *own);
 /* The same without the uncertainty: "5.39 kW". */
 void format_plain(char *dst, size_t size, struct quantity q, const struct unit *own);
 enum style quality_style(enum quality quality);

@@ -12,7 +12,7 @@
 
 #include "panel.h"
 
-enum { NEEDLE = 15, NEEDLE_COLUMN = 57, LINES = 4, WIDE = 160, TREND_SPAN_S = 4 * 3600 };
+enum { NEEDLE = 15, NEEDLE_COLUMN = 54, LINES = 4, WIDE = 160, TREND_SPAN_S = 4 * 3600 };
 
 static int ledger_count(const struct view *view)
 {
@@ -165,15 +165,16 @@ static void heat_lines(const struct view *view, const struct ledger *ledger, cha
     const struct vessel *vessel = &plant->vessel[ledger->thing];
     const struct unit watt = unit_si(DIMENSION_POWER);
     part(one, size, view, DERIVED_VESSEL_HEAT_LOAD, ledger->thing, "heat load ", true);
+    *two = '\0';
     if (vessel->has_heat_budget) {
         char budget[40];
         format_plain(budget, sizeof(budget), quantity_good(vessel->heat_budget_w, 0), &watt);
-        text_format(one + strlen(one), size - strlen(one), ", budget %s", budget);
+        text_format(two, size, "budget %s, ", budget);
     }
-    *two = '\0';
     if (vessel->condenser >= 0) {
         char rated[40] = "";
-        part(two, size, view, DERIVED_CONDENSER_DUTY, vessel->condenser, "cooling ", false);
+        part(two + strlen(two), size - strlen(two), view, DERIVED_CONDENSER_DUTY,
+             vessel->condenser, "cooling ", false);
         format_plain(rated, sizeof(rated),
                      quantity_good(plant->condenser[vessel->condenser].rated_duty_w, 0), &watt);
         if (plant->condenser[vessel->condenser].rated_duty_w > 0)
@@ -195,8 +196,9 @@ static void mass_lines(const struct view *view, const struct ledger *ledger, cha
     char fill[60], daily[60];
     part(one, size, view, DERIVED_VESSEL_LIQUID_MASS, ledger->thing, "liquid ", true);
     part(fill, sizeof(fill), view, DERIVED_VESSEL_FILL, ledger->thing, "", false);
-    text_format(one + strlen(one), size - strlen(one), ", %s full", fill);
-    part(two, size, view, DERIVED_VESSEL_BOIL_OFF, ledger->thing, "boil-off ", true);
+    text_format(two, size, "%s full, ", fill);
+    part(two + strlen(two), size - strlen(two), view, DERIVED_VESSEL_BOIL_OFF, ledger->thing,
+         "boil-off ", true);
     part(daily, sizeof(daily), view, DERIVED_VESSEL_BOIL_OFF_DAILY, ledger->thing, "", false);
     text_format(two + strlen(two), size - strlen(two), ", %s", daily);
 }
@@ -337,20 +339,11 @@ static void draw_ledger(const struct view *view, const struct ledger *ledger, bo
         air_lines(view, ledger, one, two, sizeof(one));
         break;
     }
-    int end = canvas_text(canvas, second, left, STYLE_NORMAL, one);
-    int needle = NEEDLE_COLUMN;
-    /* A long line pushes the needle to the third, rather than being cut. */
-    int needle_row = end < needle ? second : third;
+    canvas_text(canvas, second, left, STYLE_NORMAL, one);
+    draw_needle(ledger, canvas, second, NEEDLE_COLUMN);
     canvas_text(canvas, third, left, STYLE_NORMAL, two);
-    if (needle_row == third && left + (int)strlen(two) >= needle)
-        needle_row = first;
-    if (needle_row >= 0 && needle_row != first)
-        draw_needle(ledger, canvas, needle_row, needle);
-    else
-        canvas_text(canvas, first, pen->area.columns - 8, word_style(ledger->word),
-                    ledger_word_text(ledger->word));
     if (pen->area.columns >= WIDE)
-        draw_trend(view, trend_tag(view, ledger), pen, first, 96, pen->area.columns - 98);
+        draw_trend(view, trend_tag(view, ledger), pen, first, 88, pen->area.columns - 90);
     pen_line(pen);
 }
 

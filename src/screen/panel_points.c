@@ -33,7 +33,10 @@ static void draw_row(const struct view *view, int tag, bool chosen, struct pen *
     int row = pen_line(pen);
     if (row < 0)
         return;
-    format_quantity(value, sizeof(value), q, unit);
+    if (plant_tag_is_point(view->plant, tag))
+        format_reading(value, sizeof(value), q, unit);
+    else
+        format_quantity(value, sizeof(value), q, unit);
     if (plant_tag_is_point(view->plant, tag) && view->frame->sample[tag].read_utc_ns != 0)
         time_format_span(age, sizeof(age), frame_age_s(view->frame, tag));
     canvas_text(pen->canvas, row, 0, STYLE_STRONG, chosen ? "▸" : " ");

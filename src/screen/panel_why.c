@@ -42,8 +42,8 @@ static void draw_budget_row(const struct view *view, const struct budget_row *en
     const char *name = entry->tag >= 0 ? plant_tag_name(view->plant, entry->tag) : entry->says;
     format_plain(u, sizeof(u), quantity_good(entry->u, 0.05 * entry->u), unit);
     if (entry->tag >= 0)
-        format_quantity(input, sizeof(input), view_tag(view, entry->tag, NULL),
-                        plant_tag_unit(view->plant, entry->tag));
+        format_reading(input, sizeof(input), view_tag(view, entry->tag, NULL),
+                       plant_tag_unit(view->plant, entry->tag));
     int row = pen_line(pen);
     canvas_format(pen->canvas, row, 3, STYLE_NORMAL, "%-24s", name);
     canvas_format(pen->canvas, row, 28, STYLE_NORMAL, "%-12s %3.0f %%", u, share * 100);

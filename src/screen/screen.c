@@ -184,18 +184,19 @@ static int draw_banners(const struct view *view, struct canvas *canvas)
 
 static void draw_foot(const struct screen *screen, struct canvas *canvas)
 {
-    int row = canvas_rows(canvas) - 1, column = 1;
+    int row = canvas_rows(canvas) - 1, column = 0;
+    int gap = canvas_columns(canvas) >= 100 ? 3 : 1;
     for (int i = 0; i < panel_count(); i++) {
         if (panels[i] == &panel_why)
             continue;
         enum style style = i == screen->panel ? STYLE_STRONG : STYLE_FAINT;
         const char *name = panels[i] == &panel_help ? "keys" : panels[i]->name;
         column = canvas_format(canvas, row, column, style, "%c %s", panels[i]->key, name);
-        column += 2;
+        column += gap;
     }
     for (int i = 0; i < key_help_count(); i++)
         if (key_helps[i].foot != NULL)
-            column = canvas_text(canvas, row, column, STYLE_FAINT, key_helps[i].foot) + 2;
+            column = canvas_text(canvas, row, column, STYLE_FAINT, key_helps[i].foot) + gap;
 }
 
 /* Keeps the scroll within the last drawing's lines. */

@@ -12,7 +12,7 @@ const char *view_mode_word(enum view_mode mode)
     case VIEW_LIVE:
         return "LIVE";
     case VIEW_DEMO:
-        return "DEMO (simulated plant)";
+        return "SIMULATED";
     case VIEW_REPLAY:
         return "REPLAY";
     }

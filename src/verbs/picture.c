@@ -76,6 +76,15 @@ int picture_option(struct picture *picture, const char *verb, int option, const 
     }
 }
 
+/* While curses owns the terminal no line may go there; links' ups and downs are in the journal.
+ */
+static void swallow(enum log_level level, const char *line, void *context)
+{
+    (void)level;
+    (void)line;
+    (void)context;
+}
+
 void picture_settle(struct picture *picture)
 {
     const struct passwd *entry = getpwuid(getuid());
@@ -88,15 +97,11 @@ void picture_settle(struct picture *picture)
         picture->print = true;
     if (picture->print && strcmp(nl_langinfo(CODESET), "UTF-8") != 0)
         picture->dashboard.ascii = true;
-}
-
-/* While curses owns the terminal no line may go there; links' ups and downs are in the journal.
- */
-static void swallow(enum log_level level, const char *line, void *context)
-{
-    (void)level;
-    (void)line;
-    (void)context;
+    /* What goes well is no news on stderr; what does not still is. */
+    if (picture->print)
+        log_set_level(LOG_LEVEL_WARNING);
+    else
+        log_set_sink(swallow, NULL);
 }
 
 int picture_show(const struct picture *picture, const char *verb, struct collector *collector,
@@ -109,7 +114,6 @@ int picture_show(const struct picture *picture, const char *verb, struct collect
         code = dashboard_print(collector, &picture->dashboard, signals_fd, PATIENCE_S, stdout,
                                &well, &err);
     } else {
-        log_set_sink(swallow, NULL);
         code = dashboard_run(collector, &picture->dashboard, signals_fd, &err);
         log_set_sink(NULL, NULL);
     }

@@ -33,7 +33,8 @@ extern const char picture_help[];
 
 /* 0 taken, 1 not one of these options, EXIT_USAGE (already told) when its value is wrong. */
 int picture_option(struct picture *picture, const char *verb, int option, const char *value);
-/* After the options: user's name; without a terminal on both ends a picture is printed. */
+/* After the options: user's name; without a terminal on both ends a picture is printed. From
+ * here on the log keeps off the terminal. */
 void picture_settle(struct picture *picture);
 /* Shows the collector. Returns an enum exit_status; failures are told. */
 int picture_show(const struct picture *picture, const char *verb, struct collector *collector,
