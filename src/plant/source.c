@@ -202,8 +202,25 @@ static char *next_line(char *buffer, int size, void *context)
 /* ---- keys
  * ------------------------------------------------------------------------------------ */
 
-static bool continue_value(struct reading *reading, const char *value)
+/* Cuts an inline comment (';' behind white space) off a continuation line, as inih does for the
+ * first line of a value but, in this version, not for the others. */
+static void cut_comment(char *text)
 {
+    for (char *at = text; *at != '\0'; at++)
+        if (*at == ';' && (at == text || at[-1] == ' ' || at[-1] == '\t')) {
+            *at = '\0';
+            break;
+        }
+}
+
+static bool continue_value(struct reading *reading, const char *line)
+{
+    char value[LINE_MAX_BYTES + 2];
+    text_copy(value, sizeof(value), line);
+    cut_comment(value);
+    text_trim(value);
+    if (*value == '\0')
+        return true;
     if (reading->section == NULL || reading->section->key_count == 0)
         return true;
     struct source_key *key = &reading->section->key[reading->section->key_count - 1];
