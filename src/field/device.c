@@ -97,14 +97,18 @@ static int read_registers(modbus_t *context, const struct block *block, uint16_t
                : modbus_read_registers(context, block->address, block->count, words);
 }
 
-static int trouble(const struct device *device, int failure, struct error *err)
+static int trouble(const struct device *device, int code, enum device_failure *failure,
+                   struct error *err)
 {
     char reason[96];
-    switch (failure) {
+    *failure = DEVICE_WRONG;
+    switch (code) {
     case ETIMEDOUT:
+        *failure = DEVICE_SILENT;
         return error_set(err, ERR_DEVICE, "no answer in %.4g ms", device->timeout_s * 1e3);
     case ECONNRESET:
     case EPIPE:
+        *failure = DEVICE_CLOSED;
         return error_set(err, ERR_NETWORK, "the device closed the connection");
     case EMBBADDATA:
     case EMBMDATA:
@@ -113,26 +117,25 @@ static int trouble(const struct device *device, int failure, struct error *err)
     case EMBUNKEXC:
         return error_set(err, ERR_DEVICE, "the answer is no valid exception");
     default:
-        if (failure >= MODBUS_ENOBASE || strerror_r(failure, reason, sizeof(reason)) != 0)
+        if (code >= MODBUS_ENOBASE || strerror_r(code, reason, sizeof(reason)) != 0)
             return error_set(err, ERR_DEVICE, "the answer is not valid");
         return error_set(err, ERR_NETWORK, "the connection failed: %s", reason);
     }
 }
 
 int device_read(struct device *device, const struct block *block, uint16_t *words,
-                bool *timed_out, struct error *err)
+                enum device_failure *failure, struct error *err)
 {
     bool bits = block->table == TABLE_COIL || block->table == TABLE_DISCRETE;
     errno = 0;
     int got = bits ? read_bits(device->context, block, words)
                    : read_registers(device->context, block, words);
-    int failure = errno;
-    *timed_out = got < 0 && failure == ETIMEDOUT;
+    int code = errno;
     if (got == block->count)
         return 0;
-    if (got < 0 && failure > MODBUS_ENOBASE && failure < MODBUS_ENOBASE + MODBUS_EXCEPTION_MAX)
-        return failure - MODBUS_ENOBASE;
-    return trouble(device, got < 0 ? failure : EMBBADDATA, err);
+    if (got < 0 && code > MODBUS_ENOBASE && code < MODBUS_ENOBASE + MODBUS_EXCEPTION_MAX)
+        return code - MODBUS_ENOBASE;
+    return trouble(device, got < 0 ? code : EMBBADDATA, failure, err);
 }
 
 /* MODBUS Application Protocol V1.1b3, 7. */

@@ -18,6 +18,7 @@ struct field {
     struct arena *arena;
     const struct plant *plant;
     int wake_fd, stop_fd;
+    atomic_bool stopping;
     int ready; /* workers whose slot and device exist */
     struct worker *worker;
 };
@@ -84,6 +85,7 @@ static int worker_init(struct field *field, int index, struct error *err)
     worker->index = index;
     worker->wake_fd = field->wake_fd;
     worker->stop_fd = field->stop_fd;
+    worker->stopping = &field->stopping;
     worker->random = seed_of(link->name);
     worker->times.since_mono_ns = time_mono_ns();
     if (worker_memory(worker, field->arena) != 0)
@@ -207,6 +209,7 @@ void field_close(struct field *field)
 {
     if (field == NULL)
         return;
+    atomic_store(&field->stopping, true);
     if (field->stop_fd >= 0)
         eventfd_write(field->stop_fd, 1);
     for (int i = 0; i < field->ready; i++) {

@@ -40,8 +40,8 @@ int field_inspect(const char *host, int port, int unit_id, const struct register
         struct block block = {.table = ref->table,
                               .address = ref->address + done,
                               .count = count - done < most ? count - done : most};
-        bool timed_out;
-        int answer = device_read(&device, &block, words + done, &timed_out, err);
+        enum device_failure failure;
+        int answer = device_read(&device, &block, words + done, &failure, err);
         if (answer > 0) {
             code = refused(host, port, &block, answer, err);
             goto out;

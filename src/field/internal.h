@@ -68,11 +68,13 @@ int device_connect(struct device *device, int stop_fd, struct error *err) MUST_C
 bool device_connected(const struct device *device);
 /* What waits at an open connection before a request. */
 enum socket_rest device_rest(const struct device *device);
+/* How a request failed: nothing came in time; the other end closed; or what came was wrong. */
+enum device_failure { DEVICE_SILENT, DEVICE_CLOSED, DEVICE_WRONG };
 /* One request. words takes block->count values (a bit is 0 or 1). 0; a positive Modbus
- * exception code; or a negative code with err, after which the connection must be closed, so
- * that a late answer never meets the next request. timed_out tells silence apart. */
+ * exception code; or a negative code with err and failure, after which the connection must be
+ * closed, so that a late answer never meets the next request. */
 int device_read(struct device *device, const struct block *block, uint16_t *words,
-                bool *timed_out, struct error *err) MUST_CHECK;
+                enum device_failure *failure, struct error *err) MUST_CHECK;
 void device_close(struct device *device);
 void device_done(struct device *device);
 /* "02, illegal address" */
@@ -130,6 +132,7 @@ struct worker {
     const struct plant *plant;
     const struct link *link;
     int index, stop_fd, wake_fd;
+    const atomic_bool *stopping; /* set before stop_fd becomes readable */
     pthread_t thread;
     bool started;
     struct device device;
@@ -149,6 +152,7 @@ struct worker {
     struct phase_times times;
     bool settled, connected_before;
     bool answered;  /* some request of this turn was */
+    bool proved;    /* some request on this connection was */
     int first_part; /* where the next turn begins */
     unsigned tries; /* since the link went down */
     int64_t remind_mono_ns;

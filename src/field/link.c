@@ -147,8 +147,8 @@ static void count_lateness(struct worker *worker, int64_t due_mono_ns)
 static int64_t next_due(struct worker *worker, int64_t start, int64_t due, bool scheduled)
 {
     int64_t period = time_s_to_ns(worker->link->period_s);
-    if (period < 1000000)
-        period = 1000000;
+    if (period < 1000)
+        period = 1000; /* back to back, and no division by nothing */
     int64_t base = start + period / worker->plant->link_count * worker->index;
     int64_t now = time_mono_ns();
     int64_t next = now < base ? base : base + ((now - base) / period + 1) * period;
@@ -165,6 +165,7 @@ static int turn(struct worker *worker, bool scheduled, int64_t due, struct error
         int code = device_connect(&worker->device, worker->stop_fd, err);
         if (code != 0)
             return code;
+        worker->proved = false;
         if (worker->connected_before) {
             worker->state.reconnects++;
             /* After an absence it may be another device, or have other registers. */

@@ -83,37 +83,30 @@ static void take_part(struct worker *worker, const struct part *part)
     }
 }
 
-/* One request. As device_read; POLL_STOPPED before it if the field closes. */
-static int ask(struct worker *worker, const struct block *block, struct error *err)
+static int reconnect(struct worker *worker, struct error *err)
+{
+    device_close(&worker->device);
+    int code = device_connect(&worker->device, worker->stop_fd, err);
+    worker->proved = false;
+    worker->state.reconnects += code == 0;
+    return code;
+}
+
+/* One request as it is. */
+static int ask_once(struct worker *worker, const struct block *block,
+                    enum device_failure *failure, struct error *err)
 {
     struct link_state *state = &worker->state;
-    if (wait_stopped(worker->stop_fd, 0))
-        return POLL_STOPPED;
-    switch (device_rest(&worker->device)) {
-    case SOCKET_STRAY: /* it would be taken for the answer to this request */
-        return error_set(err, ERR_DEVICE, "bytes came that were not asked for");
-    case SOCKET_CLOSED: { /* many devices close an idle connection: no trouble yet */
-        device_close(&worker->device);
-        int code = device_connect(&worker->device, worker->stop_fd, err);
-        if (code != 0)
-            return code;
-        state->reconnects++;
-        break;
-    }
-    case SOCKET_QUIET:
-        break;
-    }
-    bool timed_out;
     int64_t start = time_mono_ns();
     state->requests++;
     state->bytes_sent += REQUEST_BYTES;
-    int code = device_read(&worker->device, block, worker->words, &timed_out, err);
+    int code = device_read(&worker->device, block, worker->words, failure, err);
     if (code < 0) {
-        state->timeouts += timed_out;
+        state->timeouts += *failure == DEVICE_SILENT;
         return code;
     }
+    worker->answered = worker->proved = true;
     state->answers++;
-    worker->answered = true;
     state->latency_s = time_ns_to_s(time_mono_ns() - start);
     if (state->latency_s > state->latency_worst_s)
         state->latency_worst_s = state->latency_s;
@@ -124,6 +117,38 @@ static int ask(struct worker *worker, const struct block *block, struct error *e
     }
     bool bits = block->table == TABLE_COIL || block->table == TABLE_DISCRETE;
     state->bytes_received += (uint64_t)(bits ? (block->count + 7) / 8 : block->count * 2);
+    return 0;
+}
+
+/* One request, as device_read; POLL_STOPPED before it if the field closes. Many devices close a
+ * connection that was idle, or after each answer: where one closes that has answered before, it
+ * is asked once more on a new one. */
+static int ask(struct worker *worker, const struct block *block, struct error *err)
+{
+    enum device_failure failure = DEVICE_WRONG;
+    if (atomic_load_explicit(worker->stopping, memory_order_relaxed))
+        return POLL_STOPPED;
+    bool proved = worker->proved;
+    int code = ask_once(worker, block, &failure, err);
+    if (code < 0 && failure == DEVICE_CLOSED && proved) {
+        code = reconnect(worker, err);
+        if (code == 0)
+            code = ask_once(worker, block, &failure, err);
+    }
+    return code;
+}
+
+/* Looks at a connection before the first request of a turn. */
+static int look_before(struct worker *worker, struct error *err)
+{
+    switch (device_rest(&worker->device)) {
+    case SOCKET_STRAY: /* it would be taken for the first answer */
+        return error_set(err, ERR_DEVICE, "bytes came that were not asked for");
+    case SOCKET_CLOSED:
+        return reconnect(worker, err);
+    case SOCKET_QUIET:
+        break;
+    }
     return 0;
 }
 
@@ -233,7 +258,9 @@ static void tell_points(struct worker *worker)
 int poll_turn(struct worker *worker, struct error *err)
 {
     struct turn turn = {.cuts = CUTS_PER_TURN, .probes = PROBES_PER_TURN};
-    int code = 0;
+    int code = look_before(worker, err);
+    if (code != 0)
+        return code;
     for (int i = 0; i < worker->item_count; i++)
         worker->item_state[i].cause = CAUSE_NEVER_READ;
     /* After a failure the turn starts behind the part that failed: a request that the device

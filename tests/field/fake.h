@@ -23,7 +23,7 @@
 
 #include "ullage/field.h"
 
-enum { FAKE_REGISTERS = 300, FAKE_LOG = 4096, POISON = 0x5A5A };
+enum { FAKE_REGISTERS = 65536, FAKE_LOG = 4096, POISON = 0x5A5A };
 
 enum fake_mode {
     FAKE_GOOD,
@@ -48,7 +48,8 @@ enum fake_mode {
     FAKE_TWICE, /* a good answer and another with the next transaction */
     FAKE_STRANGE_EXCEPTION,
     FAKE_EXCEPTION_OF_OTHER_FUNCTION,
-    FAKE_MODES
+    FAKE_MODES,
+    FAKE_MUTATED /* right data behind a header in which one byte is wrong */
 };
 
 struct fake {
@@ -60,8 +61,10 @@ struct fake {
     atomic_int silent_from;            /* requests from this address on are not answered */
     atomic_int largest;                /* most registers in a request, else 03; 0: any */
     atomic_int answered, connections;
+    unsigned seed;                         /* FAKE_MUTATED */
     _Atomic uint16_t word[FAKE_REGISTERS]; /* of all four tables */
     pthread_mutex_t lock;
+    bool keep_no_log;
     int logged;
     uint8_t log[FAKE_LOG][12];
 };
@@ -147,7 +150,7 @@ static inline bool fake_serve(struct fake *fake, int fd, const uint8_t *request)
     int address = request[8] << 8 | request[9], count = request[10] << 8 | request[11];
     size_t length;
     int refusal = fake_refusal(fake, address, count);
-    bool poison = mode > FAKE_TOLERATED;
+    bool poison = mode > FAKE_TOLERATED && mode < FAKE_MODES;
 
     if (atomic_load(&fake->silent_from) <= address)
         return true;
@@ -159,6 +162,10 @@ static inline bool fake_serve(struct fake *fake, int fd, const uint8_t *request)
     case FAKE_GOOD:
     case FAKE_CLOSE_EACH:
     case FAKE_MODES:
+        break;
+    case FAKE_MUTATED:
+        fake->seed = fake->seed * 1664525U + 1013904223U;
+        out[(fake->seed >> 8) % 9] = (uint8_t)(fake->seed >> 24);
         break;
     case FAKE_OTHER_UNIT:
         out[6] = (uint8_t)(out[6] + 1);
@@ -256,7 +263,7 @@ static inline void *fake_run(void *context)
             if (have == sizeof(request)) {
                 have = 0;
                 pthread_mutex_lock(&fake->lock);
-                if (fake->logged < FAKE_LOG)
+                if (fake->logged < FAKE_LOG && !fake->keep_no_log)
                     memcpy(fake->log[fake->logged++], request, sizeof(request));
                 pthread_mutex_unlock(&fake->lock);
                 keep = fake_serve(fake, fd, request);
@@ -329,7 +336,7 @@ static inline void fake_stop(struct fake *fake)
 /* ---- a plant and its field -----------------------------------------------------------------
  */
 
-enum { RIG_LINKS = 32, RIG_POINTS = 128 };
+enum { RIG_LINKS = 100, RIG_POINTS = 10000 };
 
 struct rig {
     struct link link[RIG_LINKS];

@@ -589,13 +589,14 @@ static void test_inspect_reads_once_and_long_reads_whole(void **state)
 {
     struct bench *b = *state;
     struct error err = {0};
-    static uint16_t words[FAKE_REGISTERS];
+    enum { WORDS = 300 };
+    uint16_t words[WORDS];
     const struct register_ref ref = {.table = TABLE_HOLDING, .type = REGISTER_F64, .bit = -1};
-    for (int i = 0; i < FAKE_REGISTERS; i++)
+    for (int i = 0; i < WORDS; i++)
         atomic_store(&b->fake.word[i], (uint16_t)(i * 7));
-    assert_int_equal(
-        field_inspect("127.0.0.1", b->fake.port, 1, &ref, FAKE_REGISTERS, 1, words, &err), 0);
-    for (int i = 0; i < FAKE_REGISTERS; i++)
+    assert_int_equal(field_inspect("127.0.0.1", b->fake.port, 1, &ref, WORDS, 1, words, &err),
+                     0);
+    for (int i = 0; i < WORDS; i++)
         assert_int_equal(words[i], i * 7);
     pthread_mutex_lock(&b->fake.lock);
     assert_int_equal(b->fake.logged, 3); /* 300 registers, 125 at most in one request */
@@ -626,6 +627,33 @@ static void test_inspect_tells_what_is_wrong_and_the_mend(void **state)
     assert_int_equal(field_inspect(host, port, 1, &ref, 1, 0.05, &word, &err), ERR_DEVICE);
     assert_non_null(strstr(err.text, "no answer in 50 ms"));
     assert_int_equal(field_inspect(host, port, 1, &ref, 0, 1, &word, &err), ERR_ARGUMENT);
+}
+
+/* One byte of the header wrong, anything: an answer that is taken has the right data. */
+static void test_no_wrong_header_brings_wrong_data(void **state)
+{
+    struct bench *b = *state;
+    const struct register_ref ref = {.table = TABLE_HOLDING, .type = REGISTER_U16, .bit = -1};
+    int taken = 0, refused = 0;
+    b->fake.seed = 20261201;
+    print_message("seed %u\n", b->fake.seed);
+    for (int i = 0; i < 8; i++)
+        atomic_store(&b->fake.word[i], (uint16_t)(0x1111 * (i + 1)));
+    atomic_store(&b->fake.mode, FAKE_MUTATED);
+    for (int run = 0; run < 300; run++) {
+        struct error err = {0};
+        uint16_t words[8] = {0};
+        int code = field_inspect("127.0.0.1", b->fake.port, 1, &ref, 8, 0.01, words, &err);
+        refused += code != 0;
+        if (code != 0) {
+            assert_true(err.code == code && err.text[0] != '\0');
+            continue;
+        }
+        taken++;
+        for (int i = 0; i < 8; i++)
+            assert_int_equal(words[i], 0x1111 * (i + 1));
+    }
+    assert_true(taken > 20 && refused > 100);
 }
 
 /* libmodbus waits with select, whose sets end at FD_SETSIZE. */
@@ -687,6 +715,7 @@ int main(void)
         LIVE(test_unit_and_timeout_that_cannot_be_are_told_with_the_link),
         LIVE(test_inspect_reads_once_and_long_reads_whole),
         LIVE(test_inspect_tells_what_is_wrong_and_the_mend),
+        LIVE(test_no_wrong_header_brings_wrong_data),
         LIVE(test_descriptor_beyond_what_select_takes_is_refused_with_the_reason),
     };
     log_set_sink(count_lines, NULL);

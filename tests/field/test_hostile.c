@@ -229,12 +229,35 @@ static void test_block_that_is_never_answered_does_not_starve_the_others(void **
     fakes_stop(fake, 1);
 }
 
+static void test_device_that_closes_after_each_answer_is_read_whole(void **state)
+{
+    (void)state;
+    struct fake *fake = fakes_start(1);
+    static struct rig rig;
+    rig_link(&rig, "127.0.0.1", fake->port);
+    for (int i = 0; i < 5; i++)
+        rig_point(&rig, i * 100);
+    atomic_store(&fake->mode, FAKE_CLOSE_EACH);
+    struct error err = {0};
+    assert_int_equal(rig_open(&rig, &err), 0);
+    for (int value = 1; value < 5; value++) {
+        for (int i = 0; i < 5; i++)
+            atomic_store(&fake->word[i * 100], (uint16_t)value);
+        assert_true(rig_wait(&rig, all_show, value));
+    }
+    assert_true(rig.state[0].reconnects >= 10);
+    assert_true(rig.state[0].timeouts == 0);
+    field_close(rig.field);
+    fakes_stop(fake, 1);
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(test_no_bad_answer_is_ever_shown_and_every_link_recovers),
         cmocka_unit_test(test_late_answer_is_never_taken_for_the_next),
         cmocka_unit_test(test_restart_of_the_device_is_recovered_from),
+        cmocka_unit_test(test_device_that_closes_after_each_answer_is_read_whole),
         cmocka_unit_test(test_block_that_is_never_answered_does_not_starve_the_others),
     };
     log_set_sink(quiet, NULL);
