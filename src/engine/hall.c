@@ -152,20 +152,28 @@ static double gas_density(const struct engine *engine, const struct hall *hall,
            (GAS_CONSTANT * kelvin);
 }
 
-/* Standard error of the mean of the monitors (JCGM 100:2008, 4.2.3): how far one mean may stand
- * for a hall that is not mixed. */
-static double mixing_u(const struct monitors *monitors)
+static double variance_of_monitors(const struct monitors *monitors)
 {
     double squares = 0;
     for (int i = 0; i < monitors->count; i++)
         squares += (monitors->input[i].value - monitors->mean) *
                    (monitors->input[i].value - monitors->mean);
-    int n = monitors->count;
-    return n > 1 ? sqrt(squares / (n - 1) / n) : 0;
+    return monitors->count > 1 ? squares / (monitors->count - 1) : 0;
 }
 
-static void add_release_errors(const struct engine *engine, int index,
-                               const struct monitors *monitors, const struct input *fan,
+/* Standard error of the mean of the monitors (JCGM 100:2008, 4.2.3) by what they differ beyond
+ * their own uncertainty: how far one mean may stand for a hall that is not mixed. */
+static double mixing_u(const struct monitors *monitors, double variance)
+{
+    double own = 0;
+    for (int i = 0; i < monitors->count; i++)
+        if (monitors->input[i].parts > 0)
+            own += monitors->input[i].part[0].u * monitors->input[i].part[0].u;
+    double beyond = variance - own / monitors->count;
+    return beyond > 0 ? sqrt(beyond / monitors->count) : 0;
+}
+
+static void add_release_errors(const struct monitors *monitors, const struct input *fan,
                                double by_oxygen, double by_fan, double by_rate,
                                struct estimate *out)
 {
@@ -179,8 +187,6 @@ static void add_release_errors(const struct engine *engine, int index,
         }
     }
     input_add_systematic(out, by_fan, fan);
-    estimate_add_term(out, source_of(SOURCE_MIXING, index), by_oxygen * mixing_u(monitors));
-    (void)engine;
 }
 
 static void evaluate_release(struct engine *engine, int index, const struct monitors *monitors,
@@ -218,8 +224,11 @@ static void evaluate_release(struct engine *engine, int index, const struct moni
     double by_oxygen = -(flow + (drawn ? 0 : out->air.release_m3_s)) / per;
     double by_fan = (hall->fresh_air_oxygen - oxygen) / per;
     estimate_exact(&out->rate, out->air.release_m3_s);
-    add_release_errors(engine, index, monitors, fan, by_oxygen, by_fan, hall->volume_m3 / per,
-                       &out->rate);
+    add_release_errors(monitors, fan, by_oxygen, by_fan, hall->volume_m3 / per, &out->rate);
+    double variance =
+        window_sum(engine->weights.rate, window_series(window, HALL_SERIES_VARIANCE), from, to);
+    estimate_add_term(&out->rate, source_of(SOURCE_MIXING, index),
+                      by_oxygen * mixing_u(monitors, variance));
     estimate_add_term(&out->rate, source_of(SOURCE_HALL_NOISE, index),
                       hall->volume_m3 / per * line.u_slope);
     estimate_scale(&out->rate, out->density_kg_m3);
@@ -326,6 +335,7 @@ void hall_step(struct engine *engine, int index, double elapsed_s)
             [HALL_SERIES_MEAN] = monitors.mean,
             [HALL_SERIES_LOWEST] = monitors.input[monitors.lowest].value,
             [HALL_SERIES_FAN] = fan.value,
+            [HALL_SERIES_VARIANCE] = variance_of_monitors(&monitors),
         };
         window_push(&state->window, engine->utc_ns, values);
         state->pushed_utc_ns = engine->utc_ns;

@@ -168,7 +168,13 @@ void verdict_filling(struct verdict *verdict, double to_go_s);
  * ------------------------------------------------------------------------------------ */
 
 enum { HALL_BLOCKS = 60 };
-enum hall_series { HALL_SERIES_MEAN, HALL_SERIES_LOWEST, HALL_SERIES_FAN, HALL_SERIES_COUNT };
+enum hall_series {
+    HALL_SERIES_MEAN,
+    HALL_SERIES_LOWEST,
+    HALL_SERIES_FAN,
+    HALL_SERIES_VARIANCE, /* between the monitors */
+    HALL_SERIES_COUNT
+};
 
 struct hall_state {
     struct window window;

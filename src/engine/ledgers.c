@@ -114,10 +114,10 @@ static void publish_boil_off(struct engine *engine, struct vessel_state *state,
     if (verdict_usable(&daily) && !(state->liquid_mass.value > 0))
         verdict_doubt(&daily, QUALITY_MISSING, "no liquid");
     if (verdict_usable(&daily)) {
-        const double per_day = 86400 / state->liquid_mass.value;
+        const double per = 1 / state->liquid_mass.value; /* 1/s; the unit 1/d is the reader's */
         const struct estimate *const of[] = {boil, &state->liquid_mass};
-        const double by[] = {per_day, -boil->value * per_day / state->liquid_mass.value};
-        estimate_combine(&ratio, boil->value * per_day, 2, of, by);
+        const double by[] = {per, -boil->value * per / state->liquid_mass.value};
+        estimate_combine(&ratio, boil->value * per, 2, of, by);
     }
     engine_derive(engine, DERIVED_VESSEL_BOIL_OFF_DAILY, state->index, &ratio, &daily);
 }
