@@ -100,10 +100,13 @@ $(BUILD)/flags: always
 
 tests: $(BUILD)/ullage $(call chosen,$(TESTS))
 
+# Without a -j of the caller the build uses every core.
+PARALLEL = $(if $(findstring -j,$(MAKEFLAGS)),,-j$(shell nproc 2>/dev/null || echo 2))
+
 # What is missing is installed first, so the libraries' flags are read by a make of its own.
 check: ## install what tests need, build, run every test
 	@packaging/install-deps test
-	@$(MAKE) --no-print-directory run-tests
+	@$(MAKE) --no-print-directory $(PARALLEL) run-tests
 
 run-tests: tests
 	@BUILD='$(BUILD)' ULLAGE='$(BUILD)/ullage' CC='$(CC)' \
@@ -114,7 +117,7 @@ check-asan: ## the tests under the address and undefined-behaviour sanitizers
 	    CFLAGS='-O1 -g -fno-omit-frame-pointer -fsanitize=address,undefined -fno-sanitize-recover=all'
 
 check-tsan: ## the rooms with threads under the thread sanitizer
-	@$(MAKE) --no-print-directory check ROOMS='base field service simulator' BUILD=build/tsan \
+	@$(MAKE) --no-print-directory check ROOMS="base field service simulator" BUILD=build/tsan \
 	    CFLAGS='-O1 -g -fsanitize=thread'
 
 bench: $(BENCHES) $(BUILD)/ullage ## print speeds, the figure to reach beside each
@@ -122,7 +125,7 @@ bench: $(BENCHES) $(BUILD)/ullage ## print speeds, the figure to reach beside ea
 
 demo: ## the dashboard on a simulated plant; needs nothing else
 	@packaging/install-deps run
-	@$(MAKE) --no-print-directory all
+	@$(MAKE) --no-print-directory $(PARALLEL) all
 	@$(BUILD)/ullage demo
 
 format: ## lay out the C files by .clang-format
