@@ -192,7 +192,9 @@ struct derived {
     enum thing_kind kind;
     int thing; /* index among its kind */
     enum derived_id id;
-    struct unit unit;
+    struct unit unit;  /* of headers and exports */
+    struct unit shown; /* that people read: parts as %, rates as % a day; a unit with an empty
+                          symbol is a plain number */
 };
 
 /* A reference in the plant file: a tag, a constant that stands in its place, or nothing. */
@@ -431,6 +433,8 @@ int plant_tag_find(const struct plant *plant, const char *name); /* or -1 */
 const char *plant_tag_name(const struct plant *plant, int tag);
 const char *plant_tag_says(const struct plant *plant, int tag);
 const struct unit *plant_tag_unit(const struct plant *plant, int tag);
+/* The unit that people read a tag in: a point's own, or a derived quantity's shown one. */
+const struct unit *plant_tag_shown(const struct plant *plant, int tag);
 bool plant_tag_is_point(const struct plant *plant, int tag);
 /* The tag of a derived quantity of a thing, or -1 where that thing has none. */
 int plant_derived_tag(const struct plant *plant, enum derived_id id, int thing);

@@ -40,7 +40,7 @@ static double in_unit(const struct unit *unit, const struct alarm *alarm, double
 void describe_limit(char *dst, size_t size, const struct plant *plant,
                     const struct alarm *alarm)
 {
-    const struct unit *unit = plant_tag_unit(plant, alarm->watch);
+    const struct unit *unit = plant_tag_shown(plant, alarm->watch);
     char symbol[sizeof(unit->symbol) + 8];
     symbol_in_basis(symbol, sizeof(symbol), unit, alarm->limit_gauge && !alarm_is_rate(alarm));
     double low = in_unit(unit, alarm, alarm->low);
@@ -80,7 +80,7 @@ void describe_value(char *dst, size_t size, const struct plant *plant,
         text_copy(dst, size, value != 0 ? "on" : "off");
         return;
     }
-    const struct unit *unit = plant_tag_unit(plant, alarm->watch);
+    const struct unit *unit = plant_tag_shown(plant, alarm->watch);
     char symbol[sizeof(unit->symbol) + 8];
     bool rate = alarm_is_rate(alarm);
     symbol_in_basis(symbol, sizeof(symbol), unit, alarm->limit_gauge && !rate);

@@ -97,6 +97,21 @@ static bool thing_has(const struct plant *plant, enum derived_id id, int thing)
     return !of_purifier || plant->vessel[thing].purifier >= 0;
 }
 
+/* Parts of a whole are read in %, save what is a number by its nature. */
+static struct unit shown_unit_of(enum derived_id id, const struct unit *unit)
+{
+    struct unit shown = *unit;
+    bool number = id == DERIVED_HALL_FATALITY_FACTOR || id == DERIVED_DELIVERY_VERDICT ||
+                  id == DERIVED_DELIVERY_GUARDED_MARGIN;
+    if (number)
+        shown.symbol[0] = '\0';
+    else if (unit->dimension == DIMENSION_NUMBER && unit_parse("%", &shown, NULL) != 0)
+        shown = *unit;
+    else if (unit->dimension == DIMENSION_RATE && unit_parse("%/d", &shown, NULL) != 0)
+        shown = *unit;
+    return shown;
+}
+
 /* A tag with its name, for sorting; qsort has no context. */
 struct tag_name {
     const char *name;
@@ -154,6 +169,7 @@ int tags_build(struct assembly *assembly)
                 d->name = arena_text(assembly->arena, name);
                 if (d->name == NULL || unit_parse(quantities[q].unit, &d->unit, NULL) != 0)
                     return ERR_MEMORY;
+                d->shown = shown_unit_of(d->id, &d->unit);
             }
     plant->derived = derived;
     plant->derived_count = count;
@@ -199,6 +215,12 @@ const struct unit *plant_tag_unit(const struct plant *plant, int tag)
 {
     return plant_tag_is_point(plant, tag) ? &plant->point[tag].unit
                                           : &plant->derived[tag - plant->point_count].unit;
+}
+
+const struct unit *plant_tag_shown(const struct plant *plant, int tag)
+{
+    return plant_tag_is_point(plant, tag) ? &plant->point[tag].unit
+                                          : &plant->derived[tag - plant->point_count].shown;
 }
 
 bool plant_tag_is_point(const struct plant *plant, int tag)

@@ -21,7 +21,6 @@ static const struct steps steps[] = {
     {DIMENSION_MASS_FLOW,     {"kg/s", "g/s", "mg/s", "ug/s", "ng/s"}},
     {DIMENSION_MASS,          {"t", "kg", "g", "mg", "ug"}           },
     {DIMENSION_PRESSURE,      {"MPa", "kPa", "Pa"}                   },
-    {DIMENSION_NUMBER,        {"%", "ppm", "ppb", "ppt"}             },
     {DIMENSION_TIME,          {"d", "h", "min", "s", "ms"}           },
     {DIMENSION_PRESSURE_RATE, {"kPa/min", "kPa/h", "Pa/h"}           },
 };
@@ -47,8 +46,6 @@ struct unit shown_unit(const struct unit *own, double magnitude_si)
             unit = *own;
         return unit;
     }
-    if (own->dimension == DIMENSION_RATE && unit_parse("%/d", &unit, NULL) != 0)
-        unit = *own;
     return unit;
 }
 
@@ -69,7 +66,7 @@ void format_value(char *dst, size_t size, struct quantity q, const struct unit *
     }
     double shown = unit_from_si(unit, q.value);
     if (!(q.u > 0)) { /* a constant of the plant file: as it was written there */
-        text_format(dst, size, "%.6g", shown);
+        text_format(dst, size, "%.4g", shown);
         return;
     }
     int decimals = decimals_of(q, unit);
@@ -77,6 +74,12 @@ void format_value(char *dst, size_t size, struct quantity q, const struct unit *
     if (fabs(shown) < 0.5 * pow(10, -decimals))
         shown = 0;
     text_format(dst, size, "%.*f", decimals, shown);
+}
+
+/* A unit that is not written behind the number. */
+static bool plain(const struct unit *unit)
+{
+    return unit->symbol[0] == '\0' || strcmp(unit->symbol, "1") == 0;
 }
 
 static void with_mark(char *dst, size_t size, enum quality quality)
@@ -91,9 +94,8 @@ void format_plain(char *dst, size_t size, struct quantity q, const struct unit *
     struct unit unit = shown_unit(own, q.value);
     char value[48];
     format_value(value, sizeof(value), q, &unit);
-    bool bare = strcmp(value, "--") == 0 || unit.dimension == DIMENSION_BIT;
-    text_format(dst, size, "%s%s%s", value, bare || strcmp(unit.symbol, "1") == 0 ? "" : " ",
-                bare || strcmp(unit.symbol, "1") == 0 ? "" : unit.symbol);
+    bool bare = strcmp(value, "--") == 0 || plain(&unit);
+    text_format(dst, size, "%s%s%s", value, bare ? "" : " ", bare ? "" : unit.symbol);
     with_mark(dst, size, q.quality);
 }
 
@@ -101,7 +103,7 @@ static void value_and_u(char *dst, size_t size, struct quantity q, struct unit u
 {
     char value[48];
     format_value(value, sizeof(value), q, &unit);
-    const char *symbol = strcmp(unit.symbol, "1") == 0 ? "" : unit.symbol;
+    const char *symbol = plain(&unit) ? "" : unit.symbol;
     text_format(dst, size, "%s ± %.*f%s%s", value, decimals_of(q, &unit),
                 unit_span_from_si(&unit, q.u), *symbol != '\0' ? " " : "", symbol);
     with_mark(dst, size, q.quality);
@@ -124,7 +126,7 @@ void format_reading(char *dst, size_t size, struct quantity q, const struct unit
     }
     char value[48];
     format_value(value, sizeof(value), q, own);
-    bool bare = strcmp(value, "--") == 0 || own->dimension == DIMENSION_BIT;
+    bool bare = strcmp(value, "--") == 0 || plain(own);
     text_format(dst, size, "%s%s%s", value, bare ? "" : " ", bare ? "" : own->symbol);
     with_mark(dst, size, q.quality);
 }

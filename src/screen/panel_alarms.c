@@ -70,7 +70,7 @@ static void describe(const struct view *view, const struct alarm *alarm, char *d
     };
     const char *name = plant_tag_name(view->plant, alarm->watch);
     bool limit = alarm->condition == ALARM_ABOVE || alarm->condition == ALARM_BELOW;
-    struct unit unit = *plant_tag_unit(view->plant, alarm->watch);
+    struct unit unit = *plant_tag_shown(view->plant, alarm->watch);
     double value = alarm->condition == ALARM_ABOVE ? alarm->high : alarm->low;
     if (unit.gauge != alarm->limit_gauge)
         text_copy(unit.symbol, sizeof(unit.symbol), "Pa");

@@ -90,7 +90,7 @@ static void draw_reason(const struct view *view, enum derived_id id, int thing,
     char value[80];
     if (tag < 0)
         return;
-    format_quantity(value, sizeof(value), derived->quantity, plant_tag_unit(view->plant, tag));
+    format_quantity(value, sizeof(value), derived->quantity, plant_tag_shown(view->plant, tag));
     bool reason = derived->quantity.quality != QUALITY_GOOD && derived->reason[0] != '\0';
     canvas_format(pen->canvas, pen_line(pen), 3, STYLE_NORMAL, "%-22s %s%s%s%s", label, value,
                   reason ? "   (" : "", reason ? derived->reason : "", reason ? ")" : "");

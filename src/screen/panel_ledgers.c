@@ -149,7 +149,7 @@ static void part(char *dst, size_t size, const struct view *view, enum derived_i
         *dst = '\0';
         return;
     }
-    const struct unit *unit = plant_tag_unit(view->plant, tag);
+    const struct unit *unit = plant_tag_shown(view->plant, tag);
     struct quantity q = view_quantity(view, id, thing);
     if (with_u)
         format_quantity(value, sizeof(value), q, unit);
@@ -184,9 +184,8 @@ static void heat_lines(const struct view *view, const struct ledger *ledger, cha
     if (quantity_usable(hold)) {
         char span[40];
         time_format_span(span, sizeof(span), hold.value);
-        text_format(two + strlen(two), size - strlen(two),
-                    "%sif cooling stops: to relief in %s at most", *two != '\0' ? ";  " : "",
-                    span);
+        text_format(two + strlen(two), size - strlen(two), "%srelief in < %s",
+                    *two != '\0' ? ", else " : "", span);
     }
 }
 
@@ -223,7 +222,7 @@ static void purity_lines(const struct view *view, const struct ledger *ledger, c
         text_copy(two, size, "no purifier is described");
         return;
     }
-    part(two, size, view, DERIVED_PURIFIER_EFFICIENCY, purifier, "purifier takes ", false);
+    part(two, size, view, DERIVED_PURIFIER_EFFICIENCY, purifier, "purifier takes ", true);
     char used[60];
     part(used, sizeof(used), view, DERIVED_PURIFIER_LOADING, purifier, ", used ", false);
     struct quantity loading = view_quantity(view, DERIVED_PURIFIER_LOADING, purifier);
@@ -293,7 +292,7 @@ static void draw_trend(const struct view *view, int tag, struct pen *pen, int ro
                                                      : step]
                                    : " ");
     }
-    const struct unit *own = plant_tag_unit(view->plant, tag);
+    const struct unit *own = plant_tag_shown(view->plant, tag);
     char from[60], to[60];
     format_plain(from, sizeof(from), quantity_good(low, 0.01 * (high - low)), own);
     format_plain(to, sizeof(to), quantity_good(high, 0.01 * (high - low)), own);

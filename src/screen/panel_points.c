@@ -28,7 +28,7 @@ static void draw_row(const struct view *view, int tag, bool chosen, struct pen *
 {
     const char *reason;
     struct quantity q = view_tag(view, tag, &reason);
-    const struct unit *unit = plant_tag_unit(view->plant, tag);
+    const struct unit *unit = plant_tag_shown(view->plant, tag);
     char value[80], age[40] = "";
     int row = pen_line(pen);
     if (row < 0)

@@ -43,7 +43,7 @@ static void draw_budget_row(const struct view *view, const struct budget_row *en
     format_plain(u, sizeof(u), quantity_good(entry->u, 0.05 * entry->u), unit);
     if (entry->tag >= 0)
         format_reading(input, sizeof(input), view_tag(view, entry->tag, NULL),
-                       plant_tag_unit(view->plant, entry->tag));
+                       plant_tag_shown(view->plant, entry->tag));
     int row = pen_line(pen);
     canvas_format(pen->canvas, row, 3, STYLE_NORMAL, "%-24s", name);
     canvas_format(pen->canvas, row, 28, STYLE_NORMAL, "%-12s %3.0f %%", u, share * 100);
@@ -68,7 +68,7 @@ static void draw_budget(const struct view *view, int tag, struct pen *pen)
     canvas_format(pen->canvas, pen_line(pen), 3, STYLE_FAINT, "%-24s %-12s %s",
                   "what it rests on", "u from it", "share of u squared");
     for (int i = 0; i < budget.count; i++)
-        draw_budget_row(view, &budget.row[i], total, plant_tag_unit(view->plant, tag), pen);
+        draw_budget_row(view, &budget.row[i], total, plant_tag_shown(view->plant, tag), pen);
 }
 
 static void draw(const struct view *view, const struct panel_state *state, struct pen *pen)
@@ -81,7 +81,7 @@ static void draw(const struct view *view, const struct panel_state *state, struc
     }
     struct quantity q = view_tag(view, tag, &reason);
     char value[80];
-    format_quantity(value, sizeof(value), q, plant_tag_unit(view->plant, tag));
+    format_quantity(value, sizeof(value), q, plant_tag_shown(view->plant, tag));
     canvas_format(pen->canvas, pen_line(pen), 1, STYLE_STRONG, "%s = %s",
                   plant_tag_name(view->plant, tag), value);
     canvas_format(pen->canvas, pen_line(pen), 3, STYLE_NORMAL, "%s",

@@ -17,8 +17,9 @@
 
 #include "ullage/simulator.h"
 
-/* The past that is computed before the first picture, and its frames' spacing. */
-static const double PAST_S = 4 * 3600, PAST_FRAME_S = 5;
+/* The past that is computed before the first picture: long enough for the trends, frame by
+ * frame for the windows (2 h), coarser before. */
+static const double PAST_S = 4 * 3600, FINE_S = 7300, COARSE_FRAME_S = 5;
 /* An upset begins this long after the first live picture; on a printed one, this long before.
  */
 static const double UPSET_DELAY_S = 20, UPSET_LEAD_S = 600;
@@ -63,8 +64,10 @@ static int feed_past(struct simulator *simulator, const struct plant *plant,
         error_set(err, code, "no memory for the simulated past");
     int64_t now_ns = time_utc_ns();
     now_ns -= now_ns % NS_PER_S;
-    for (double ago_s = PAST_S; code == 0 && ago_s > 0; ago_s -= PAST_FRAME_S) {
-        code = simulator_step(simulator, PAST_FRAME_S, err);
+    double fine_s = plant->site.frame_s;
+    for (double ago_s = PAST_S, step_s; code == 0 && ago_s > 0; ago_s -= step_s) {
+        step_s = ago_s > FINE_S && fine_s < COARSE_FRAME_S ? COARSE_FRAME_S : fine_s;
+        code = simulator_step(simulator, step_s, err);
         if (code == 0) {
             simulator_frame(simulator, now_ns - time_s_to_ns(ago_s), &frame);
             collector_feed(collector, &frame);
