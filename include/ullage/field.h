@@ -68,8 +68,8 @@ double frame_age_s(const struct frame *frame, int point);
 int register_decode(const struct register_ref *ref, const uint16_t *words,
                     double *raw) MUST_CHECK;
 /* The reverse, for the simulator and tests: rounds to the nearest count and holds it to the
- * range of the type. A bit of a register changes that bit alone, so words must hold the register
- * as it stands. No number is sent as such by a float, as 0 by an integer. */
+ * range of the type. A bit of a register changes that bit alone, so words must hold the
+ * register as it stands. No number is sent as such by a float, as 0 by an integer. */
 void register_encode(const struct register_ref *ref, double raw, uint16_t *words);
 /* A raw number of a point as SI in the point's basis: raw/span map, then unit. */
 double point_from_raw(const struct point *point, double raw);
