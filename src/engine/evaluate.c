@@ -299,9 +299,10 @@ static void judge_gaps(const struct work *work, enum track track,
 {
     static const int net[] = {SERIES_NET_HEAT, SERIES_NET_MASS, SERIES_NET_VAPOUR};
     const struct window_weights *w = work->weights;
-    double full = w->span_s / work->engine->plant->site.frame_s;
-    double part = full > 0 ? w->frames / full : 1;
-    if (part > 0.95)
+    double lost = window_sum(window_frames(&work->state->window), series(work, SERIES_LOST),
+                             w->from + 1, w->to) /
+                  w->span_s;
+    if (lost < 0.02)
         return;
     const double *rate = series(work, net[track]);
     double low = rate[w->from], high = low;
@@ -309,14 +310,14 @@ static void judge_gaps(const struct work *work, enum track track,
         low = rate[k] < low ? rate[k] : low;
         high = rate[k] > high ? rate[k] : high;
     }
-    estimate_add_term(&balance->unexplained, source_of(SOURCE_GAPS, work->state->index),
-                      (1 - part) * (high - low) / sqrt(12));
+    double u = lost * (high - low) / sqrt(12);
+    estimate_add_term(&balance->unexplained, source_of(SOURCE_GAPS, work->state->index), u);
     if (track == TRACK_HEAT)
         estimate_add_term(&work->state->heat_load, source_of(SOURCE_GAPS, work->state->index),
-                          -(1 - part) * (high - low) / sqrt(12));
-    if (part < 0.5)
-        verdict_doubt(&balance->verdict, part < 0.1 ? QUALITY_BAD : QUALITY_UNCERTAIN,
-                      "only %.0f %% of the readings%s%.70s", 100 * part,
+                          -u);
+    if (lost > 0.5)
+        verdict_doubt(&balance->verdict, lost > 0.9 ? QUALITY_BAD : QUALITY_UNCERTAIN,
+                      "%.0f %% of the window lost%s%.70s", 100 * lost,
                       work->state->lost.reason[0] != '\0' ? ": " : "",
                       work->state->lost.reason);
 }

@@ -263,7 +263,9 @@ static void sum_release(struct engine *engine, int index, const struct release *
     struct hall_state *state = &engine->hall[index];
     struct verdict verdict = release->verdict;
     if (verdict_usable(&release->verdict)) {
-        bool significant = release->rate.value > 2 * estimate_u(&release->rate);
+        /* Three u to begin, two to go on: at two alone one quiet hour in some would begin one. */
+        double limit = (state->significant_utc_ns == 0 ? 3 : 2) * estimate_u(&release->rate);
+        bool significant = release->rate.value > limit;
         if (significant && state->significant_utc_ns == 0)
             estimate_exact(&state->total, 0);
         if (significant)

@@ -98,6 +98,7 @@ enum series {
     SERIES_NET_VAPOUR, /* out less in, plus condensed inside */
     SERIES_PUMP,
     SERIES_COOLING,
+    SERIES_LOST,      /* seconds before a frame in which nothing could be used */
     SERIES_ENERGY_BY, /* derivatives: CONTENTS_VARIABLES of them */
     SERIES_MASS_BY = SERIES_ENERGY_BY + CONTENTS_VARIABLES,
     SERIES_STREAMS =
@@ -141,7 +142,9 @@ struct vessel_state {
     double start_s[TRACK_COUNT]; /* of the present regime, in the window's time */
     int64_t pushed_utc_ns;       /* last frame in the window; 0: none */
     int64_t heat_utc_ns;         /* last frame at which every enthalpy was known */
-    struct verdict lost;         /* why the last frame that stayed outside did so */
+    double interval_s;           /* usual time between frames */
+    bool rejected;               /* a frame stayed outside since the last that did not */
+    struct verdict lost;         /* why */
     struct balance_result balance[TRACK_COUNT];
     struct estimate heat_load, pressure_rate, hold_time;
     struct verdict pressure_rate_verdict, hold_time_verdict;

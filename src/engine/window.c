@@ -56,6 +56,20 @@ static void push_streams(const struct engine *engine, struct vessel_state *state
     }
 }
 
+/* Seconds before this frame that the window knows nothing of. */
+static double lost_s(struct vessel_state *state, int64_t utc_ns)
+{
+    if (state->window.count == 0) {
+        state->interval_s = 0;
+        return 0;
+    }
+    double span = time_ns_to_s(utc_ns - state->pushed_utc_ns);
+    bool usual = !state->rejected && (state->interval_s == 0 || span < 5 * state->interval_s);
+    if (usual)
+        state->interval_s += (span - state->interval_s) * (state->interval_s == 0 ? 1 : 0.1);
+    return usual ? 0 : span;
+}
+
 bool vessel_window_push(struct engine *engine, struct vessel_state *state)
 {
     int64_t least_ns = time_s_to_ns(state->vessel->window_minimum_s);
@@ -67,11 +81,14 @@ bool vessel_window_push(struct engine *engine, struct vessel_state *state)
         (state->vapour_temperature.described && state->contents_input.vapour_saturated)) {
         state->lost = state->contents_verdict;
         verdict_join(&state->lost, &state->flows_verdict);
+        state->rejected = true;
         return false;
     }
     bool began = state->window.count == 0;
     if (began)
         state->base_j_kg = state->contents.line.liquid.enthalpy_j_kg;
+    state->values[SERIES_LOST] = lost_s(state, engine->utc_ns);
+    state->rejected = false;
     push_contents(state, state->values);
     push_streams(engine, state, state->values);
     bool opened = window_push(&state->window, engine->utc_ns, state->values);
