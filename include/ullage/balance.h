@@ -185,6 +185,9 @@ int contents_at(const struct fluid *fluid, const struct shape *shape,
 void contents_energy(const struct contents *contents, double reference_j_kg,
                      struct contents_property *out);
 
+/* The state of one phase; a gas above the critical temperature counts as vapour. */
+int phase_at(const struct fluid *fluid, double temperature_k, double pressure_pa,
+             enum fluid_phase phase, struct fluid_state *out, struct error *err) MUST_CHECK;
 /* Enthalpy of one phase with its derivatives by temperature and pressure. With saturated true
  * temperature_k is not used, and by_pressure runs along the line. */
 struct enthalpy {

@@ -56,6 +56,15 @@ void enthalpy_of_line(const struct fluid_saturation *line, enum fluid_phase phas
     out->by_temperature = out->density_by_temperature = 0;
 }
 
+int phase_at(const struct fluid *fluid, double temperature_k, double pressure_pa,
+             enum fluid_phase phase, struct fluid_state *out, struct error *err)
+{
+    if (phase == FLUID_PHASE_VAPOUR &&
+        temperature_k >= fluid_limits(fluid)->critical_temperature_k)
+        phase = FLUID_PHASE_ANY;
+    return fluid_at_tp(fluid, temperature_k, pressure_pa, phase, out, err);
+}
+
 int enthalpy_at(const struct fluid *fluid, double temperature_k, double pressure_pa,
                 enum fluid_phase phase, bool saturated, struct enthalpy *out, struct error *err)
 {
@@ -67,7 +76,7 @@ int enthalpy_at(const struct fluid *fluid, double temperature_k, double pressure
         return code;
     }
     struct fluid_state state;
-    int code = fluid_at_tp(fluid, temperature_k, pressure_pa, phase, &state, err);
+    int code = phase_at(fluid, temperature_k, pressure_pa, phase, &state, err);
     if (code == 0)
         enthalpy_of_state(&state, out);
     return code;
@@ -90,9 +99,8 @@ static int phases_at(const struct fluid *fluid, const struct contents_input *inp
             return code;
     }
     if (!input->vapour_saturated)
-        out->vapour_doubtful =
-            fluid_at_tp(fluid, input->vapour_temperature_k, input->pressure_pa,
-                        FLUID_PHASE_VAPOUR, &out->vapour, NULL) != 0;
+        out->vapour_doubtful = phase_at(fluid, input->vapour_temperature_k, input->pressure_pa,
+                                        FLUID_PHASE_VAPOUR, &out->vapour, NULL) != 0;
     return 0;
 }
 

@@ -263,7 +263,8 @@ static void sum_release(struct engine *engine, int index, const struct release *
     struct hall_state *state = &engine->hall[index];
     struct verdict verdict = release->verdict;
     if (verdict_usable(&release->verdict)) {
-        /* Three u to begin, two to go on: at two alone one quiet hour in some would begin one. */
+        /* Three u to begin, two to go on: at two alone one quiet hour in some would begin one.
+         */
         double limit = (state->significant_utc_ns == 0 ? 3 : 2) * estimate_u(&release->rate);
         bool significant = release->rate.value > limit;
         if (significant && state->significant_utc_ns == 0)

@@ -64,8 +64,8 @@ static void read_side(const struct engine *engine, const struct condenser *conde
     if (!in && above < tolerance)
         verdict_doubt(verdict, QUALITY_UNCERTAIN,
                       "coolant of %s leaves at saturation: may carry liquid", condenser->name);
-    if (fluid_at_tp(condenser->coolant, side->temperature.value, side->pressure.value, phase,
-                    &state, &err) == 0)
+    if (phase_at(condenser->coolant, side->temperature.value, side->pressure.value, phase,
+                 &state, &err) == 0)
         enthalpy_of_state(&state, &side->h);
     else
         verdict_doubt(verdict, QUALITY_BAD, "coolant: %.100s", err.text);
