@@ -124,7 +124,7 @@ class Terminal:
         config = os.path.join(self.folder, "conf")
         with open(config, "w") as out:
             out.write(f"set -g default-terminal {term}\nset -g status off\n"
-                      "set -g escape-time 0\nset -g window-size manual\n")
+                      "set -g escape-time 0\n")
         self.tmux("-f", config, "new-session", "-d", "-x", str(columns), "-y", str(rows), shell)
 
     def tmux(self, *words):
