@@ -114,7 +114,8 @@ class Terminal:
         self.socket = os.path.join(self.folder, "s")
         self.exit_path = os.path.join(self.folder, "exit")
         quoted = " ".join("'" + word.replace("'", "'\\''") + "'" for word in command)
-        shell = f"{quoted} 2>'{self.folder}/stderr'; echo $? >'{self.exit_path}'"
+        # Ctrl-C reaches the shell too: it must live to write the status down.
+        shell = f"trap : INT; {quoted} 2>'{self.folder}/stderr'; echo $? >'{self.exit_path}'"
         env = {"PATH": os.environ["PATH"], "HOME": self.folder, "TZ": "UTC", "LC_ALL": "C.UTF-8",
                "TERM": "xterm-256color", "SHELL": "/bin/sh"}
         for name in ("ASAN_OPTIONS", "UBSAN_OPTIONS", "LSAN_OPTIONS"):
