@@ -3,8 +3,8 @@
 
 /*
  * Every row of the check values: states and saturation of all fluids. Source: tests/data/fluid,
- * whose heads name the published equation and how the numbers were made (an independent evaluation
- * of the published coefficients; saturation by a general-purpose property library).
+ * whose heads name the published equation and how the numbers were made (an independent
+ * evaluation of the published coefficients; saturation by a general-purpose property library).
  */
 #include <math.h>
 #include <setjmp.h>
@@ -45,8 +45,8 @@ static int read_rows(const char *fluid, const char *kind, double rows[ROWS][COLU
     return count;
 }
 
-static void near(const char *fluid, const char *what, double t, double p, double got, double want,
-                 double scale, double tolerance)
+static void near(const char *fluid, const char *what, double t, double p, double got,
+                 double want, double scale, double tolerance)
 {
     if (!(fabs(got - want) <= tolerance * scale))
         fail_msg("%s at %.9g K, %.9g Pa: %s is %.15g, published equation %.15g (%.2g of scale)",
@@ -74,9 +74,9 @@ static void test_states_agree_with_the_published_equations(void **state)
             struct error err = {0};
             if (fluid_at_tp(fluid, r[0], r[1], FLUID_PHASE_ANY, &s, &err) != 0)
                 fail_msg("%s", err.text);
-            double energy = entropy * (r[0] > limits->critical_temperature_k
-                                           ? r[0]
-                                           : limits->critical_temperature_k);
+            double energy =
+                entropy *
+                (r[0] > limits->critical_temperature_k ? r[0] : limits->critical_temperature_k);
             near(name, "density", r[0], r[1], s.density_kg_m3, r[2], r[2], REACH);
             near(name, "enthalpy", r[0], r[1], s.enthalpy_j_kg, r[3], energy, REACH);
             near(name, "entropy", r[0], r[1], s.entropy_j_kg_k, r[4], entropy, REACH);
@@ -115,13 +115,18 @@ static void test_saturation_agrees_with_the_published_equations(void **state)
             near(name, "temperature", r[0], r[1], s.temperature_k, r[0], r[0], REACH);
             near(name, "liquid density", r[0], r[1], s.liquid.density_kg_m3, r[2], r[2], FLASH);
             near(name, "vapour density", r[0], r[1], s.vapour.density_kg_m3, r[3], r[3], FLASH);
-            near(name, "liquid enthalpy", r[0], r[1], s.liquid.enthalpy_j_kg, r[4], energy, FLASH);
-            near(name, "vapour enthalpy", r[0], r[1], s.vapour.enthalpy_j_kg, r[5], energy, FLASH);
-            near(name, "liquid entropy", r[0], r[1], s.liquid.entropy_j_kg_k, r[6], entropy, FLASH);
-            near(name, "vapour entropy", r[0], r[1], s.vapour.entropy_j_kg_k, r[7], entropy, FLASH);
+            near(name, "liquid enthalpy", r[0], r[1], s.liquid.enthalpy_j_kg, r[4], energy,
+                 FLASH);
+            near(name, "vapour enthalpy", r[0], r[1], s.vapour.enthalpy_j_kg, r[5], energy,
+                 FLASH);
+            near(name, "liquid entropy", r[0], r[1], s.liquid.entropy_j_kg_k, r[6], entropy,
+                 FLASH);
+            near(name, "vapour entropy", r[0], r[1], s.vapour.entropy_j_kg_k, r[7], entropy,
+                 FLASH);
             if (!isnan(r[8])) {
                 double tension;
-                assert_int_equal(fluid_surface_tension(fluid, s.temperature_k, &tension, NULL), 0);
+                assert_int_equal(fluid_surface_tension(fluid, s.temperature_k, &tension, NULL),
+                                 0);
                 near(name, "tension", r[0], r[1], tension, r[8], r[8], 1e-6);
             }
             assert_int_equal(fluid_saturation_at_t(fluid, r[0], &s, &err), 0);
@@ -133,12 +138,16 @@ static void test_saturation_agrees_with_the_published_equations(void **state)
 static void test_facts_of_the_trade(void **state)
 {
     (void)state;
-    /* Normal boiling points near 87 K (argon), 77 K (nitrogen), 90 K (oxygen); liquid argon about
-     * 1.4 t/m3: common practice, no source. */
+    /* Normal boiling points near 87 K (argon), 77 K (nitrogen), 90 K (oxygen); liquid argon
+     * about 1.4 t/m3: common practice, no source. */
     static const struct {
         const char *name;
         double boiling_k;
-    } facts[] = {{"argon", 87}, {"nitrogen", 77}, {"oxygen", 90}};
+    } facts[] = {
+        {"argon",    87},
+        {"nitrogen", 77},
+        {"oxygen",   90}
+    };
     struct fluid_saturation s;
     for (size_t i = 0; i < ARRAY_LENGTH(facts); i++) {
         assert_int_equal(fluid_saturation_at_p(fluid_find(facts[i].name), 101325, &s, NULL), 0);
