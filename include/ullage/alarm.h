@@ -116,6 +116,10 @@ int alarm_unacknowledged(const struct alarm_set *set);
  * then priority, then newest, then the plant file's order. Writes indices of all alarms into
  * order. */
 void alarm_order(const struct alarm_set *set, int *order);
+/* What an alarm waits for, in the unit of the watched tag and the pressure basis of the limit:
+ * "above 14 kPa(g)", "outside 10 .. 14 kPa", "falling faster than 2 kPa per min", "on". */
+void alarm_limit_text(char *dst, size_t size, const struct plant *plant,
+                      const struct alarm *alarm);
 
 /* ---- banners -------------------------------------------------------------------------------
  */

@@ -340,7 +340,7 @@ static void alarm_text(struct banner *banner, const struct plant *plant,
 {
     const struct alarm *alarm = &plant->alarm[banner->index];
     char head[200], limit[80];
-    describe_limit(limit, sizeof(limit), plant, alarm);
+    alarm_limit_text(limit, sizeof(limit), plant, alarm);
     const char *tag = plant_tag_name(plant, alarm->watch);
     if (!alarm_stands(state))
         text_format(head, sizeof(head), "%s CANNOT BE TOLD: %s%.60s is not %s.",

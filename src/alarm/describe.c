@@ -37,8 +37,8 @@ static double in_unit(const struct unit *unit, const struct alarm *alarm, double
                                 : unit_from_si(unit, value);
 }
 
-void describe_limit(char *dst, size_t size, const struct plant *plant,
-                    const struct alarm *alarm)
+void alarm_limit_text(char *dst, size_t size, const struct plant *plant,
+                      const struct alarm *alarm)
 {
     const struct unit *unit = plant_tag_shown(plant, alarm->watch);
     char symbol[sizeof(unit->symbol) + 8];

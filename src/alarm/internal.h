@@ -10,9 +10,6 @@
 
 #include "ullage/alarm.h"
 
-/* "above 14 kPa(g)", "outside 10 .. 14 kPa", "falling faster than 2 kPa per min", "on". */
-void describe_limit(char *dst, size_t size, const struct plant *plant,
-                    const struct alarm *alarm);
 /* A value judged by the alarm (a rate for the rate conditions), at the digits u supports. */
 void describe_value(char *dst, size_t size, const struct plant *plant,
                     const struct alarm *alarm, double value, double u);

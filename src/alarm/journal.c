@@ -75,7 +75,7 @@ static void event_text(char *dst, size_t size, const struct plant *plant,
     const char *tag = plant_tag_name(plant, alarm->watch);
     bool usable = event->quality == QUALITY_GOOD || event->quality == QUALITY_UNCERTAIN;
     char limit[80], value[80] = "";
-    describe_limit(limit, sizeof(limit), plant, alarm);
+    alarm_limit_text(limit, sizeof(limit), plant, alarm);
     if (!usable || alarm->condition == ALARM_IS_BAD)
         text_copy(value, sizeof(value), quality_word(event->quality));
     else
