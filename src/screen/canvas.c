@@ -9,12 +9,14 @@
 
 #include <stdlib.h>
 #include <string.h>
-#include <wchar.h>
+
+enum { TEXT_MAX = SCREEN_COLUMNS_MAX * 4 + 1 };
 
 struct canvas {
     int columns, rows;
     bool ascii;
     struct area clip;
+    int lost;
     struct cell *cells;
 };
 
@@ -65,7 +67,13 @@ void canvas_clear(struct canvas *canvas)
     size_t count = (size_t)canvas->columns * (size_t)canvas->rows;
     for (size_t i = 0; i < count; i++)
         canvas->cells[i] = (struct cell){.rune = ' ', .style = STYLE_NORMAL};
+    canvas->lost = 0;
     canvas_clip(canvas, NULL);
+}
+
+int canvas_lost(const struct canvas *canvas)
+{
+    return canvas->lost;
 }
 
 const struct cell *canvas_cell(const struct canvas *canvas, int row, int column)
@@ -73,47 +81,6 @@ const struct cell *canvas_cell(const struct canvas *canvas, int row, int column)
     if (row < 0 || column < 0 || row >= canvas->rows || column >= canvas->columns)
         return NULL;
     return &canvas->cells[row * canvas->columns + column];
-}
-
-/* What stands for a rune where only ASCII can be shown. */
-static uint32_t ascii_rune(uint32_t rune)
-{
-    static const struct {
-        uint32_t rune;
-        char ascii;
-    } table[] = {
-        {0x00B1, '~'},
-        {0x00B7, '.'},
-        {0x00B0, 'd'},
-        {0x25C6, 'o'},
-        {0x2026, '~'},
-        {0x2013, '-'},
-        {0x2014, '-'},
-        {0x2212, '-'},
-        {0x2500, '-'},
-        {0x2502, '|'},
-        {0x2588, '#'},
-        {0x2581, '_'},
-        {0x2582, '.'},
-        {0x2583, '-'},
-        {0x2584, '='},
-        {0x2585, '+'},
-        {0x2586, '*'},
-        {0x2587, '%'},
-        {0x258F, '|'},
-        {0x2595, '|'},
-        {0x25B8, '>'},
-        {0x00D7, 'x'},
-        {0x2192, '>'},
-        {0x03BC, 'u'},
-        {0x00B5, 'u'},
-    };
-    if (rune < 0x7F)
-        return rune;
-    for (size_t i = 0; i < ARRAY_LENGTH(table); i++)
-        if (table[i].rune == rune)
-            return (uint32_t)table[i].ascii;
-    return '?';
 }
 
 static bool inside(const struct canvas *canvas, int row, int column)
@@ -128,41 +95,58 @@ static void put(struct canvas *canvas, int row, int column, uint32_t rune, enum 
 {
     struct cell *cell = &canvas->cells[row * canvas->columns + column];
     /* A half of a wide character that loses the other half becomes a blank. */
-    if (cell->rune == 0 && column > 0)
+    if (cell->rune == 0 && column > 0 && rune != 0)
         cell[-1].rune = ' ';
-    if (column + 1 < canvas->columns && cell[1].rune == 0 && rune != 0)
+    if (column + 1 < canvas->columns && cell[1].rune == 0)
         cell[1].rune = ' ';
     *cell = (struct cell){.rune = rune, .style = style};
 }
 
+/* One rune of a known width; returns the column after. */
+static int put_rune(struct canvas *canvas, int row, int column, uint32_t rune, int width,
+                    enum style style)
+{
+    if (inside(canvas, row, column) && (width == 1 || inside(canvas, row, column + 1))) {
+        put(canvas, row, column, rune, style);
+        if (width == 2)
+            put(canvas, row, column + 1, 0, style);
+    } else if (rune != ' ' && row >= canvas->clip.row &&
+               row < canvas->clip.row + canvas->clip.rows && column > 0) {
+        canvas->lost++;
+    }
+    return column + width;
+}
+
+/* The next rune of a text; what is not well-formed is '?'. */
+static uint32_t next_rune(const char **at)
+{
+    uint32_t rune = '?';
+    size_t bytes = text_rune(*at, &rune);
+    *at += bytes > 0 ? bytes : 1;
+    return rune;
+}
+
+static int width_of(const struct canvas *canvas, uint32_t rune)
+{
+    if (!canvas->ascii || rune < 0x80 || rune_width(rune) == 0)
+        return rune_width(rune);
+    return (int)strlen(rune_ascii(rune));
+}
+
 int canvas_text(struct canvas *canvas, int row, int column, enum style style, const char *text)
 {
-    char clean[SCREEN_COLUMNS_MAX * 4 + 1];
+    char clean[TEXT_MAX];
     text_printable(clean, sizeof(clean), text);
-    const char *at = clean;
-    while (*at != '\0') {
-        uint32_t rune = '?';
-        size_t bytes = text_rune(at, &rune);
-        at += bytes > 0 ? bytes : 1;
-        if (canvas->ascii)
-            rune = ascii_rune(rune);
-        int width = rune < 0x300 ? 1 : wcwidth((wchar_t)rune);
+    for (const char *at = clean; *at != '\0';) {
+        uint32_t rune = next_rune(&at);
+        int width = width_of(canvas, rune);
         if (width == 0)
             continue; /* a mark on the character before: the cell holds one rune */
-        if (width < 0) {
-            width = 1;
-            /* In a locale that does not know it; our own drawing characters are one wide. */
-            if (!(rune >= 0x2010 && rune <= 0x28FF))
-                rune = '?';
-        }
-        bool fits =
-            inside(canvas, row, column) && (width == 1 || inside(canvas, row, column + 1));
-        if (fits) {
-            put(canvas, row, column, rune, style);
-            if (width == 2)
-                put(canvas, row, column + 1, 0, style);
-        }
-        column += width;
+        if (canvas->ascii && rune >= 0x80)
+            for (const char *ascii = rune_ascii(rune); *ascii != '\0'; ascii++)
+                column = put_rune(canvas, row, column, (uint32_t)*ascii, 1, style);
+        else
+            column = put_rune(canvas, row, column, rune, width, style);
     }
     return column;
 }
@@ -170,7 +154,7 @@ int canvas_text(struct canvas *canvas, int row, int column, enum style style, co
 int canvas_format(struct canvas *canvas, int row, int column, enum style style, const char *fmt,
                   ...)
 {
-    char text[SCREEN_COLUMNS_MAX * 4 + 1];
+    char text[TEXT_MAX];
     va_list args;
     va_start(args, fmt);
     vsnprintf(text, sizeof(text), fmt, args);
@@ -178,30 +162,51 @@ int canvas_format(struct canvas *canvas, int row, int column, enum style style, 
     return canvas_text(canvas, row, column, style, text);
 }
 
-void canvas_restyle(struct canvas *canvas, int row, enum style style)
+int canvas_width(const struct canvas *canvas, const char *text)
 {
-    for (int column = 0; column < canvas->columns; column++)
-        if (inside(canvas, row, column))
-            canvas->cells[row * canvas->columns + column].style = style;
+    int width = 0;
+    for (const char *at = text; *at != '\0';)
+        width += width_of(canvas, next_rune(&at));
+    return width;
 }
 
-static void write_rune(uint32_t rune, FILE *out)
+int canvas_fit(struct canvas *canvas, int row, int column, int width, enum style style,
+               const char *text)
 {
-    if (rune < 0x80) {
-        fputc((int)rune, out);
-    } else if (rune < 0x800) {
-        fputc((int)(0xC0 | rune >> 6), out);
-        fputc((int)(0x80 | (rune & 0x3F)), out);
-    } else if (rune < 0x10000) {
-        fputc((int)(0xE0 | rune >> 12), out);
-        fputc((int)(0x80 | (rune >> 6 & 0x3F)), out);
-        fputc((int)(0x80 | (rune & 0x3F)), out);
-    } else {
-        fputc((int)(0xF0 | rune >> 18), out);
-        fputc((int)(0x80 | (rune >> 12 & 0x3F)), out);
-        fputc((int)(0x80 | (rune >> 6 & 0x3F)), out);
-        fputc((int)(0x80 | (rune & 0x3F)), out);
+    if (width < 1)
+        return column;
+    if (canvas_width(canvas, text) <= width)
+        return canvas_text(canvas, row, column, style, text);
+    char part[TEXT_MAX];
+    int used = 0;
+    const char *at = text;
+    for (;;) {
+        const char *next = at;
+        int more = width_of(canvas, next_rune(&next));
+        if (used + more > width - 1 || next - text >= (long)sizeof(part))
+            break;
+        used += more;
+        at = next;
     }
+    text_format(part, sizeof(part), "%.*s", (int)(at - text), text);
+    return canvas_text(canvas, row, canvas_text(canvas, row, column, style, part), style, "…");
+}
+
+void canvas_restyle(struct canvas *canvas, enum style from, enum style to)
+{
+    const struct area *clip = &canvas->clip;
+    for (int row = clip->row; row < clip->row + clip->rows; row++)
+        for (int column = clip->column; column < clip->column + clip->columns; column++) {
+            struct cell *cell = &canvas->cells[row * canvas->columns + column];
+            if (cell->style == from && cell->rune != ' ')
+                cell->style = to;
+        }
+}
+
+void canvas_fill(struct canvas *canvas, int row, int column, enum style style)
+{
+    for (; inside(canvas, row, column); column++)
+        canvas_text(canvas, row, column, style, " ");
 }
 
 void canvas_write(const struct canvas *canvas, FILE *out)
@@ -211,9 +216,11 @@ void canvas_write(const struct canvas *canvas, FILE *out)
         int end = canvas->columns;
         while (end > 0 && cells[end - 1].rune == ' ')
             end--;
-        for (int column = 0; column < end; column++)
+        for (int column = 0; column < end; column++) {
+            char text[5];
             if (cells[column].rune != 0)
-                write_rune(cells[column].rune, out);
+                fwrite(text, 1, rune_write(cells[column].rune, text), out);
+        }
         fputc('\n', out);
     }
 }
@@ -228,47 +235,4 @@ void canvas_write_styles(const struct canvas *canvas, FILE *out)
             fputc(marks[canvas->cells[row * canvas->columns + column].style], out);
         fputc('\n', out);
     }
-}
-
-/* ---- pen -----------------------------------------------------------------------------------
- */
-
-int pen_line(struct pen *pen)
-{
-    int row = pen->line++ - pen->scroll;
-    return row >= 0 && row < pen->area.rows ? pen->area.row + row : -1;
-}
-
-int pen_wrap(struct pen *pen, int indent, enum style style, const char *text)
-{
-    int width = pen->area.columns - indent, lines = 0;
-    const char *at = text;
-    while (*at != '\0' && width > 8) {
-        size_t length = wrap_length(at, width);
-        char line[SCREEN_COLUMNS_MAX * 4 + 1];
-        text_format(line, sizeof(line), "%.*s", (int)length, at);
-        canvas_text(pen->canvas, pen_line(pen), pen->area.column + indent, style, line);
-        at += length;
-        while (*at == ' ')
-            at++;
-        lines++;
-    }
-    return lines;
-}
-
-size_t wrap_length(const char *text, int width)
-{
-    size_t at = 0, last = 0;
-    int column = 0;
-    while (text[at] != '\0') {
-        uint32_t rune = '?';
-        size_t bytes = text_rune(text + at, &rune);
-        if (text[at] == ' ')
-            last = at;
-        if (column == width)
-            return last > 0 ? last : at;
-        at += bytes > 0 ? bytes : 1;
-        column++;
-    }
-    return at;
 }

@@ -11,6 +11,9 @@
 #include <stdio.h>
 #include <string.h>
 
+const struct unit format_percent = {
+    .symbol = "%", .dimension = DIMENSION_NUMBER, .scale = 0.01};
+
 /* Steps of a unit, from large to small: the first that leaves at least 1 before the point. */
 struct steps {
     enum dimension dimension;
@@ -49,86 +52,107 @@ struct unit shown_unit(const struct unit *own, double magnitude_si)
     return unit;
 }
 
-static int decimals_of(struct quantity q, const struct unit *unit)
+/* Numbers too long for their place are told by magnitude rather than cut. */
+static const double longest_number = 1e7;
+
+static void format_number(char *dst, size_t size, double shown, int decimals)
 {
-    return quantity_decimals(unit_span_from_si(unit, q.u), 3);
+    /* A minus before what rounds to nothing says nothing. */
+    if (fabs(shown) < 0.5 * pow(10, -decimals))
+        shown = 0;
+    if (fabs(shown) >= longest_number)
+        text_format(dst, size, "%.4g", shown);
+    else if (decimals > 6)
+        text_format(dst, size, "%.3g", shown);
+    else
+        text_format(dst, size, "%.*f", decimals, shown);
 }
 
 void format_value(char *dst, size_t size, struct quantity q, const struct unit *unit)
 {
-    if (q.quality == QUALITY_BAD || q.quality == QUALITY_MISSING) {
+    if (q.quality == QUALITY_BAD || q.quality == QUALITY_MISSING)
         text_copy(dst, size, "--");
-        return;
-    }
-    if (unit->dimension == DIMENSION_BIT) {
+    else if (unit->dimension == DIMENSION_BIT)
         text_copy(dst, size, q.value != 0 ? "on" : "off");
-        return;
-    }
-    double shown = unit_from_si(unit, q.value);
-    if (!(q.u > 0)) { /* a constant of the plant file: as it was written there */
-        text_format(dst, size, "%.4g", shown);
-        return;
-    }
-    int decimals = decimals_of(q, unit);
-    /* A minus before what rounds to nothing says nothing. */
-    if (fabs(shown) < 0.5 * pow(10, -decimals))
-        shown = 0;
-    text_format(dst, size, "%.*f", decimals, shown);
+    else if (!(q.u > 0)) /* a constant of the plant file: as it was written there */
+        text_format(dst, size, "%.6g", unit_from_si(unit, q.value));
+    else
+        format_number(dst, size, unit_from_si(unit, q.value),
+                      quantity_decimals(unit_span_from_si(unit, q.u), 3));
 }
 
-/* A unit that is not written behind the number. */
-static bool plain(const struct unit *unit)
+/* Value, uncertainty if asked for and known, unit, and the quality's mark. */
+static void format_in(char *dst, size_t size, struct quantity q, const struct unit *unit,
+                      bool with_u)
 {
-    return unit->symbol[0] == '\0' || strcmp(unit->symbol, "1") == 0;
+    char value[48], u[64] = "", mark[3] = "";
+    format_value(value, sizeof(value), q, unit);
+    if (strcmp(value, "--") == 0) {
+        text_copy(dst, size, value);
+        return;
+    }
+    double u_shown = unit_span_from_si(unit, q.u);
+    if (with_u && q.u > 0 && unit->dimension != DIMENSION_BIT) {
+        text_copy(u, sizeof(u), " ± ");
+        format_number(u + strlen(u), sizeof(u) - strlen(u), u_shown,
+                      quantity_decimals(u_shown, 3));
+    }
+    if (q.quality != QUALITY_GOOD)
+        text_format(mark, sizeof(mark), " %c", quality_mark(q.quality));
+    bool bare = unit->symbol[0] == '\0' || strcmp(unit->symbol, "1") == 0;
+    text_format(dst, size, "%s%s%s%s%s", value, u, bare ? "" : " ", bare ? "" : unit->symbol,
+                mark);
 }
 
-static void with_mark(char *dst, size_t size, enum quality quality)
+/* Also by u, so that what is zero within its uncertainty is not told in a tiny unit. */
+static struct unit unit_of(struct quantity q, const struct unit *own)
 {
-    size_t length = strlen(dst);
-    if (quality != QUALITY_GOOD && strcmp(dst, "--") != 0 && length + 3 < size)
-        text_format(dst + length, size - length, " %c", quality_mark(quality));
+    return shown_unit(own, fmax(fabs(q.value), 10 * q.u));
 }
 
 void format_plain(char *dst, size_t size, struct quantity q, const struct unit *own)
 {
-    struct unit unit = shown_unit(own, q.value);
-    char value[48];
-    format_value(value, sizeof(value), q, &unit);
-    bool bare = strcmp(value, "--") == 0 || plain(&unit);
-    text_format(dst, size, "%s%s%s", value, bare ? "" : " ", bare ? "" : unit.symbol);
-    with_mark(dst, size, q.quality);
-}
-
-static void value_and_u(char *dst, size_t size, struct quantity q, struct unit unit)
-{
-    char value[48];
-    format_value(value, sizeof(value), q, &unit);
-    const char *symbol = plain(&unit) ? "" : unit.symbol;
-    text_format(dst, size, "%s ± %.*f%s%s", value, decimals_of(q, &unit),
-                unit_span_from_si(&unit, q.u), *symbol != '\0' ? " " : "", symbol);
-    with_mark(dst, size, q.quality);
+    struct unit unit = unit_of(q, own);
+    format_in(dst, size, q, &unit, false);
 }
 
 void format_quantity(char *dst, size_t size, struct quantity q, const struct unit *own)
 {
-    double magnitude = fabs(q.value) > q.u ? q.value : q.u;
-    if (!quantity_usable(q) || !(q.u > 0))
-        format_plain(dst, size, q, own);
-    else
-        value_and_u(dst, size, q, shown_unit(own, magnitude));
+    struct unit unit = unit_of(q, own);
+    format_in(dst, size, q, &unit, true);
 }
 
 void format_reading(char *dst, size_t size, struct quantity q, const struct unit *own)
 {
-    if (quantity_usable(q) && q.u > 0) {
-        value_and_u(dst, size, q, *own);
-        return;
+    format_in(dst, size, q, own, true);
+}
+
+void format_tag(char *dst, size_t size, const struct view *view, int tag, bool with_u)
+{
+    static const char *const verdicts[] = {"accept", "hold", "reject"};
+    struct quantity q = view_tag(view, tag, NULL);
+    struct unit unit = *plant_tag_shown(view->plant, tag);
+    if (!plant_tag_is_point(view->plant, tag)) {
+        enum derived_id id = view->plant->derived[tag - view->plant->point_count].id;
+        if (id == DERIVED_DELIVERY_VERDICT && quantity_usable(q) && q.value >= 0 &&
+            q.value < 3) {
+            text_copy(dst, size, verdicts[(int)q.value]);
+            return;
+        }
+        unit = unit_of(q, &unit);
     }
-    char value[48];
-    format_value(value, sizeof(value), q, own);
-    bool bare = strcmp(value, "--") == 0 || plain(own);
-    text_format(dst, size, "%s%s%s", value, bare ? "" : " ", bare ? "" : own->symbol);
-    with_mark(dst, size, q.quality);
+    format_in(dst, size, q, &unit, with_u);
+}
+
+void format_age(char *dst, size_t size, const struct view *view, int tag)
+{
+    *dst = '\0';
+    if (!plant_tag_is_point(view->plant, tag) || view->frame->sample[tag].read_utc_ns == 0 ||
+        view_tag(view, tag, NULL).quality != QUALITY_STALE)
+        return;
+    char span[32];
+    time_format_span(span, sizeof(span), fmax(frame_age_s(view->frame, tag), view->stale_s));
+    text_format(dst, size, " (%s old)", span);
 }
 
 enum style quality_style(enum quality quality)
@@ -155,18 +179,20 @@ void format_clock(char *dst, size_t size, int64_t utc_ns)
         *t = ' ';
 }
 
-const struct derived_value *view_derived(const struct view *view, enum derived_id id, int thing)
+/* ---- what the view says
+ * ------------------------------------------------------------------------ */
+
+/* When the source has stopped nothing is live, whatever it was when it was read. */
+struct quantity view_as_of_now(const struct view *view, struct quantity q)
 {
-    static const struct derived_value none = {.quantity = {.quality = QUALITY_MISSING}};
-    int tag = plant_derived_tag(view->plant, id, thing);
-    if (tag < 0 || view->results == NULL || view->results->derived == NULL)
-        return &none;
-    return &view->results->derived[tag - view->plant->point_count];
+    if (view->stale && quantity_usable(q))
+        q.quality = QUALITY_STALE;
+    return q;
 }
 
 struct quantity view_quantity(const struct view *view, enum derived_id id, int thing)
 {
-    return view_derived(view, id, thing)->quantity;
+    return view_tag(view, plant_derived_tag(view->plant, id, thing), NULL);
 }
 
 struct quantity view_tag(const struct view *view, int tag, const char **reason)
@@ -181,13 +207,14 @@ struct quantity view_tag(const struct view *view, int tag, const char **reason)
         const struct sample *sample = &view->frame->sample[tag];
         if (sample->quality != QUALITY_GOOD)
             *reason = cause_says(sample->cause);
-        return (struct quantity){
-            .value = sample->value, .u = sample->u, .quality = sample->quality};
+        return view_as_of_now(view, (struct quantity){.value = sample->value,
+                                                      .u = sample->u,
+                                                      .quality = sample->quality});
     }
     const struct derived_value *derived =
         &view->results->derived[tag - view->plant->point_count];
     *reason = derived->reason;
-    return derived->quantity;
+    return view_as_of_now(view, derived->quantity);
 }
 
 struct quantity view_ref(const struct view *view, const struct ref *ref)

@@ -11,8 +11,11 @@
 #include "canvas.h"
 #include "format.h"
 
+/* What is kept of a panel between pictures. */
 struct panel_state {
-    int selected;              /* row of a list, in panels that have one */
+    int selected; /* row of a list, in panels that have one */
+    int id;       /* what that row stood for when it was last drawn (id_of), or -1 */
+    bool held;    /* the operator chose it: it keeps what it stands for when rows move */
     int scroll, lines, height; /* of the last drawing */
 };
 
@@ -22,10 +25,10 @@ struct panel {
     const char *asks; /* the question it answers, for help */
     /* Rows that can be chosen; NULL: none, arrows scroll. */
     int (*count)(const struct view *view);
-    /* Draws with the pen; the chosen row is state->selected. */
+    /* Draws with the pen, which is told where the chosen row is: state->selected. */
     void (*draw)(const struct view *view, const struct panel_state *state, struct pen *pen);
-    /* Line on which a chosen row stands, to scroll to it; NULL: its own number. */
-    int (*line_of)(const struct view *view, int row);
+    /* What a row stands for, in lists whose rows change places; NULL: row n is n. */
+    int (*id_of)(const struct view *view, int row);
     /* Tag whose origin the why panel shows for a row, or -1; NULL: none. */
     int (*why)(const struct view *view, int row);
     /* Keys of its own; NULL: none. */
@@ -47,6 +50,30 @@ struct key_help {
 extern const struct key_help key_helps[];
 int key_help_count(void);
 
-/* The tag whose origin panel_why shows; kept in its selected. */
+/* ---- layout: what stands around a panel
+ * -------------------------------------------------------- */
+
+void layout_title(const struct view *view, struct canvas *canvas);
+/* The banners and the advisory line from a row on; returns the first free row. */
+int layout_banners(const struct view *view, struct canvas *canvas, int row);
+void layout_foot(const struct panel *chosen, struct canvas *canvas);
+/* The whole picture where there is no room for a panel. */
+void layout_small(const struct view *view, struct canvas *canvas);
+
+/* ---- needle and trend
+ * -------------------------------------------------------------------------- */
+
+enum { NEEDLE_COLUMNS = 25 };
+/* A needle and the ledger's word behind it. live: what it stands for is known now. */
+void needle_draw(const struct ledger *ledger, bool live, struct canvas *canvas, int row,
+                 int column);
+/* A curve of one row; columns without a value stay blank. False if there is none at all. */
+bool trend_draw(const struct trend_column *column, int count, struct canvas *canvas, int row,
+                int at, double *low, double *high);
+
+/* ---- method: how a derived quantity is found, in one sentence
+ * ------------------------------------ */
+
+const char *method_says(enum derived_id id);
 
 #endif

@@ -3,26 +3,27 @@
 
 /*
  * What wants an answer? Alarms in the order of their need: unacknowledged first, then priority.
- * The chosen one shows its consequence and response.
+ * The chosen one shows its consequence and response. An acknowledgement is for the alarm that
+ * was shown as chosen, never for one that has taken its place since.
  */
 #include <stdio.h>
-#include <stdlib.h>
 #include <string.h>
 
 #include "panel.h"
 
-enum { ORDER_MAX = 20000 };
+enum { ORDER_MAX = 4096, NAME = 17, WHAT = 42, TEXT = 17 };
 
 static int count(const struct view *view)
 {
-    return view->alarms != NULL ? view->plant->alarm_count : 0;
+    int alarms = view->alarms != NULL ? view->plant->alarm_count : 0;
+    return alarms < ORDER_MAX ? alarms : 0;
 }
 
 /* Index of the alarm in a row of the list, or -1. */
 static int alarm_at(const struct view *view, int row)
 {
-    static _Thread_local int order[ORDER_MAX];
-    if (row < 0 || row >= count(view) || view->plant->alarm_count > ORDER_MAX)
+    int order[ORDER_MAX];
+    if (row < 0 || row >= count(view))
         return -1;
     alarm_order(view->alarms, order);
     return order[row];
@@ -30,8 +31,6 @@ static int alarm_at(const struct view *view, int row)
 
 static const char *phase_word(const struct alarm_state *state)
 {
-    if (state->phase == ALARM_NORMAL && state->unknown)
-        return "UNKNOWN";
     switch (state->phase) {
     case ALARM_ACTIVE:
         return "ACTIVE";
@@ -42,7 +41,7 @@ static const char *phase_word(const struct alarm_state *state)
     case ALARM_NORMAL:
         break;
     }
-    return "normal";
+    return state->unknown ? "UNKNOWN" : "normal";
 }
 
 static enum style phase_style(const struct alarm *alarm, const struct alarm_state *state)
@@ -56,80 +55,82 @@ static enum style phase_style(const struct alarm *alarm, const struct alarm_stat
                                   : STYLE_CAUTION;
 }
 
-static void describe(const struct view *view, const struct alarm *alarm, char *dst, size_t size)
+/* Since when, by whom, what is behind it: for the chosen alarm. */
+static void draw_detail(const struct view *view, const struct alarm *alarm,
+                        const struct alarm_state *state, struct pen *pen)
 {
-    static const char *const words[] = {
-        [ALARM_ABOVE] = "above",
-        [ALARM_BELOW] = "below",
-        [ALARM_OUTSIDE] = "outside",
-        [ALARM_IS_BAD] = "is bad",
-        [ALARM_IS_ON] = "is on",
-        [ALARM_IS_OFF] = "is off",
-        [ALARM_RISING_FASTER] = "rises fast",
-        [ALARM_FALLING_FASTER] = "falls fast",
-    };
-    const char *name = plant_tag_name(view->plant, alarm->watch);
-    bool limit = alarm->condition == ALARM_ABOVE || alarm->condition == ALARM_BELOW;
-    struct unit unit = *plant_tag_shown(view->plant, alarm->watch);
-    double value = alarm->condition == ALARM_ABOVE ? alarm->high : alarm->low;
-    if (unit.gauge != alarm->limit_gauge)
-        text_copy(unit.symbol, sizeof(unit.symbol), "Pa");
-    else if (!unit.gauge)
-        unit = shown_unit(&unit, value);
-    if (limit)
-        text_format(dst, size, "%s %s %g %s", name, words[alarm->condition],
-                    unit_from_si(&unit, value), unit.symbol);
-    else
-        text_format(dst, size, "%s %s", name, words[alarm->condition]);
+    char clock[40], text[800];
+    const char *doubt = state->unknown ? "; its source is not good now" : "";
+    if (state->active_utc_ns != 0 && state->phase != ALARM_NORMAL) {
+        format_clock(clock, sizeof(clock), state->active_utc_ns);
+        text_format(text, sizeof(text), "since %s%s%s%s", clock,
+                    state->user[0] != '\0' ? ", acknowledged by " : "", state->user, doubt);
+        pen_wrap(pen, TEXT, STYLE_NORMAL, text);
+    } else if (state->unknown) {
+        pen_wrap(pen, TEXT, STYLE_CAUTION,
+                 "its source is not good: whether all is well cannot be "
+                 "told");
+    }
+    format_tag(text, sizeof(text), view, alarm->watch, true);
+    char now[900];
+    text_format(now, sizeof(now), "%s now: %s", plant_tag_name(view->plant, alarm->watch),
+                text);
+    pen_wrap(pen, TEXT, STYLE_NORMAL, now);
+    text_format(text, sizeof(text), "consequence: %s",
+                alarm->consequence != NULL ? alarm->consequence
+                                           : "not given in the plant file");
+    pen_wrap(pen, TEXT, STYLE_NORMAL, text);
+    text_format(text, sizeof(text), "response: %s",
+                alarm->response != NULL ? alarm->response : "by site procedure");
+    pen_wrap(pen, TEXT, STYLE_NORMAL, text);
 }
 
 static void draw_row(const struct view *view, int index, bool chosen, struct pen *pen)
 {
     const struct alarm *alarm = &view->plant->alarm[index];
     const struct alarm_state *state = alarm_state(view->alarms, index);
-    char what[120], clock[40] = "", user[48] = "";
-    describe(view, alarm, what, sizeof(what));
-    if (state->active_utc_ns != 0 && state->phase != ALARM_NORMAL)
-        format_clock(clock, sizeof(clock), state->active_utc_ns);
-    if (state->user[0] != '\0' && state->phase == ALARM_ACKNOWLEDGED)
-        text_format(user, sizeof(user), " by %s", state->user);
+    char limit[120], what[200];
+    alarm_limit_text(limit, sizeof(limit), view->plant, alarm);
+    text_format(what, sizeof(what), "%s %s", plant_tag_name(view->plant, alarm->watch), limit);
     int row = pen_line(pen);
     canvas_text(pen->canvas, row, 0, STYLE_STRONG, chosen ? "▸" : " ");
     canvas_format(pen->canvas, row, 1, phase_style(alarm, state), "%d %-12s", alarm->priority,
                   phase_word(state));
-    canvas_format(pen->canvas, row, 17, STYLE_NORMAL, "%-24s %s", alarm->name, what);
-    if (chosen && clock[0] != '\0')
-        canvas_format(pen->canvas, pen_line(pen), 17, STYLE_NORMAL, "since %s%s%s", clock, user,
-                      state->unknown ? "; its source is not good now" : "");
-    if (!chosen)
-        return;
-    char text[600];
-    text_format(text, sizeof(text), "consequence: %s",
-                alarm->consequence != NULL ? alarm->consequence
-                                           : "not given in the plant file");
-    pen_wrap(pen, 17, STYLE_NORMAL, text);
-    text_format(text, sizeof(text), "response: %s",
-                alarm->response != NULL ? alarm->response : "by site procedure");
-    pen_wrap(pen, 17, STYLE_NORMAL, text);
+    canvas_fit(pen->canvas, row, NAME, WHAT - NAME - 1, STYLE_NORMAL, alarm->name);
+    /* What does not fit beside the name has a line of its own. */
+    int room = pen->area.columns - WHAT - 1;
+    if (canvas_width(pen->canvas, what) <= room)
+        canvas_text(pen->canvas, row, WHAT, STYLE_NORMAL, what);
+    else if (chosen)
+        pen_wrap(pen, TEXT, STYLE_NORMAL, what);
+    else
+        canvas_fit(pen->canvas, row, WHAT, room, STYLE_NORMAL,
+                   plant_tag_name(view->plant, alarm->watch));
+    if (chosen)
+        draw_detail(view, alarm, state, pen);
 }
 
 static void draw(const struct view *view, const struct panel_state *state, struct pen *pen)
 {
-    canvas_format(pen->canvas, pen_line(pen), 1, STYLE_FAINT, "%-15s %-24s %s", "P state",
-                  "alarm", "what it watches");
-    for (int i = 0; i < count(view); i++) {
-        int index = alarm_at(view, i);
-        if (index >= 0)
-            draw_row(view, index, i == state->selected, pen);
+    int order[ORDER_MAX], rows = count(view);
+    if (rows == 0) {
+        pen_wrap(pen, 1, STYLE_NORMAL,
+                 view->plant->alarm_count == 0 ? "No alarm is described."
+                                               : "The alarms cannot be shown here.");
+        return;
     }
-    if (count(view) == 0)
-        canvas_text(pen->canvas, pen_line(pen), 1, STYLE_NORMAL, "No alarm is described.");
-}
-
-static int line_of(const struct view *view, int row)
-{
-    (void)view;
-    return row + 1;
+    alarm_order(view->alarms, order);
+    int head = pen_line(pen);
+    canvas_text(pen->canvas, head, 1, STYLE_FAINT, "P state");
+    canvas_text(pen->canvas, head, NAME, STYLE_FAINT, "alarm");
+    canvas_text(pen->canvas, head, WHAT, STYLE_FAINT, "what it waits for");
+    for (int i = 0; i < rows; i++) {
+        if (i == state->selected)
+            pen_chosen_begin(pen);
+        draw_row(view, order[i], i == state->selected, pen);
+        if (i == state->selected)
+            pen_chosen_end(pen);
+    }
 }
 
 static int why(const struct view *view, int row)
@@ -138,29 +139,52 @@ static int why(const struct view *view, int row)
     return index >= 0 ? view->plant->alarm[index].watch : -1;
 }
 
+static bool waits(const struct view *view, int index)
+{
+    enum alarm_phase phase = alarm_state(view->alarms, index)->phase;
+    return phase == ALARM_ACTIVE || phase == ALARM_RETURNED;
+}
+
+static enum screen_request acknowledge_all(const struct view *view, struct command *command,
+                                           char *message, size_t message_size)
+{
+    int found = 0, highest = 0;
+    for (int i = 0; i < count(view); i++)
+        if (waits(view, i))
+            *(view->plant->alarm[i].priority > 1 ? &found : &highest) += 1;
+    text_format(message, message_size, "%d acknowledged%s", found,
+                highest > 0 ? "; priority 1 only one by one, with a" : "");
+    if (found == 0) {
+        text_copy(message, message_size,
+                  highest > 0 ? "priority 1 is acknowledged one by one, with a"
+                              : "nothing to acknowledge");
+        return SCREEN_REDRAW;
+    }
+    *command = (struct command){.kind = COMMAND_ACKNOWLEDGE_ALL, .alarm = 1};
+    return SCREEN_COMMAND;
+}
+
 static enum screen_request key_pressed(const struct view *view, struct panel_state *state,
                                        uint32_t key, struct command *command, char *message,
                                        size_t message_size)
 {
-    if (key == 'A') {
-        *command = (struct command){.kind = COMMAND_ACKNOWLEDGE_ALL, .alarm = 1};
-        text_copy(message, message_size,
-                  "all below priority 1 acknowledged; those of priority 1 one by one with a");
-        return SCREEN_COMMAND;
-    }
-    if (key != 'a')
+    if (key != 'a' && key != 'A')
         return SCREEN_NONE;
-    int index = alarm_at(view, state->selected);
-    if (index < 0)
-        return SCREEN_REDRAW;
-    const struct alarm_state *alarm = alarm_state(view->alarms, index);
-    if (alarm->phase != ALARM_ACTIVE && alarm->phase != ALARM_RETURNED) {
-        text_format(message, message_size, "%s: nothing to acknowledge",
-                    view->plant->alarm[index].name);
+    if (view->mode == VIEW_REPLAY) {
+        text_copy(message, message_size, "this is a record: nothing can be acknowledged in it");
         return SCREEN_REDRAW;
     }
-    *command = (struct command){.kind = COMMAND_ACKNOWLEDGE, .alarm = index};
-    text_format(message, message_size, "%s acknowledged", view->plant->alarm[index].name);
+    if (key == 'A')
+        return acknowledge_all(view, command, message, message_size);
+    if (state->id < 0 || state->id >= count(view))
+        return SCREEN_REDRAW;
+    const char *name = view->plant->alarm[state->id].name;
+    if (!waits(view, state->id)) {
+        text_format(message, message_size, "%s: nothing to acknowledge", name);
+        return SCREEN_REDRAW;
+    }
+    *command = (struct command){.kind = COMMAND_ACKNOWLEDGE, .alarm = state->id};
+    text_format(message, message_size, "%s acknowledged", name);
     return SCREEN_COMMAND;
 }
 
@@ -169,7 +193,7 @@ const struct panel panel_alarms = {
     .key = '5',
     .asks = "what wants an answer?",
     .count = count,
-    .line_of = line_of,
+    .id_of = alarm_at,
     .why = why,
     .draw = draw,
     .key_pressed = key_pressed,

@@ -29,7 +29,8 @@ static void draw(const struct view *view, const struct panel_state *state, struc
                       "and %d less serious ones beyond this list", banners->more);
     if (banners->count == 0)
         pen_wrap(pen, 1, STYLE_NORMAL, "No safety statement stands now.");
-    pen_line(pen);
+    if (banners->count == 0)
+        pen_line(pen);
     pen_wrap(
         pen, 1, STYLE_ADVISORY,
         "ADVISORY ONLY. This display reads instruments and computes; it controls nothing and "

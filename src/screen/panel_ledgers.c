@@ -12,17 +12,11 @@
 
 #include "panel.h"
 
-enum { NEEDLE = 15, NEEDLE_COLUMN = 54, LINES = 4, WIDE = 160, TREND_SPAN_S = 4 * 3600 };
+enum { NAME = 8, NAME_COLUMNS = 14, WIDE = 160, WIDE_NEEDLE = 86, TREND_SPAN_S = 4 * 3600 };
 
 static int ledger_count(const struct view *view)
 {
     return view->results->ledger_count;
-}
-
-static int line_of(const struct view *view, int row)
-{
-    (void)view;
-    return row * LINES;
 }
 
 static const char *thing_name(const struct view *view, const struct ledger *ledger)
@@ -42,12 +36,11 @@ static int why(const struct view *view, int row)
         return plant_derived_tag(view->plant, DERIVED_VESSEL_HEAT_LOAD, ledger->thing);
     case LEDGER_MASS:
         return plant_derived_tag(view->plant, DERIVED_VESSEL_MASS_UNEXPLAINED, ledger->thing);
-    case LEDGER_PURITY: {
+    case LEDGER_PURITY:
         for (int i = 0; i < view->plant->drift_count; i++)
             if (view->plant->drift[i].vessel == ledger->thing)
                 return plant_derived_tag(view->plant, DERIVED_DRIFT_LIFETIME, i);
         return plant_derived_tag(view->plant, DERIVED_VESSEL_OXYGEN_INGRESS, ledger->thing);
-    }
     case LEDGER_AIR:
         return plant_derived_tag(view->plant, DERIVED_HALL_OXYGEN_LOWEST, ledger->thing);
     }
@@ -66,297 +59,313 @@ static int trend_tag(const struct view *view, const struct ledger *ledger)
 
 static double rounded(double value, double step)
 {
-    return step * round(value / step);
+    return step * round(value / step) + 0.0; /* no negative zero */
 }
 
-/* Rounded terms must still add up for the reader: the residue of rounding goes to the largest
- * of in and out, where it is least. */
-static void draw_sum(const struct view *view, const struct ledger *ledger,
-                     struct canvas *canvas, int row, int column)
+/* The sum with some decimals: terms, then the unexplained part. Rounded terms must still add up
+ * for the reader: the residue of rounding goes to the largest of in and out, where it is least.
+ */
+static void sum_text(const struct ledger *ledger, const struct unit *unit, int decimals,
+                     const char *gap, char *terms, char *rest, size_t size)
+{
+    double step = pow(10, -decimals);
+    double in = rounded(unit_from_si(unit, ledger->in.value), step);
+    double out = rounded(unit_from_si(unit, ledger->out.value), step);
+    double stored = rounded(unit_from_si(unit, ledger->stored.value), step);
+    double left = rounded(unit_from_si(unit, ledger->unexplained.value), step);
+    double u = unit_span_from_si(unit, ledger->unexplained.u);
+    double residue = in - out - stored - left;
+    if (fabs(in) >= fabs(out))
+        in = rounded(in - residue, step);
+    else
+        out = rounded(out + residue, step);
+    text_format(terms, size, "in %.*f%s-%sout %.*f%s-%sstored %.*f%s=%s", decimals, in, gap,
+                gap, decimals, out, gap, gap, decimals, stored, gap, gap);
+    /* An uncertainty is never shown as none. */
+    bool hidden = u < 0.5 * step;
+    char mark[3] = "";
+    if (ledger->unexplained.quality != QUALITY_GOOD)
+        text_format(mark, sizeof(mark), " %c", quality_mark(ledger->unexplained.quality));
+    text_format(rest, size, "%+.*f ± %s%.*f %s%s", decimals, left, hidden ? "<" : "", decimals,
+                hidden ? step : u, unit->symbol, mark);
+}
+
+/* Decimals as the uncertainty allows; fewer where the line is too short for them. */
+static void draw_sum(const struct ledger *ledger, bool live, struct canvas *canvas, int row,
+                     int column, int end)
 {
     const struct unit own =
         unit_si(ledger->kind == LEDGER_HEAT ? DIMENSION_POWER : DIMENSION_MASS_FLOW);
     double largest = fmax(fmax(fabs(ledger->in.value), fabs(ledger->out.value)),
-                          fmax(fabs(ledger->unexplained.value), ledger->unexplained.u));
+                          fmax(fabs(ledger->unexplained.value), 10 * ledger->unexplained.u));
     struct unit unit = shown_unit(&own, largest);
-    double u = unit_span_from_si(&unit, ledger->unexplained.u);
-    int decimals = quantity_decimals(u, 2);
-    double step = pow(10, -decimals);
-    double in = rounded(unit_from_si(&unit, ledger->in.value), step);
-    double out = rounded(unit_from_si(&unit, ledger->out.value), step);
-    double stored = rounded(unit_from_si(&unit, ledger->stored.value), step);
-    double rest = rounded(unit_from_si(&unit, ledger->unexplained.value), step);
-    double residue = in - out - stored - rest;
-    if (fabs(in) >= fabs(out))
-        in -= residue;
-    else
-        out += residue;
-    (void)view;
-    canvas_format(canvas, row, column, STYLE_NORMAL,
-                  "in %.*f  -  out %.*f  -  stored %.*f  =  %+.*f ± %.*f %s", decimals,
-                  in + 0.0, decimals, out + 0.0, decimals, stored + 0.0, decimals, rest + 0.0,
-                  decimals, u, unit.symbol);
-}
-
-static enum style word_style(enum ledger_word word)
-{
-    switch (word) {
-    case LEDGER_FINDING:
-    case LEDGER_BLIND:
-        return STYLE_CAUTION;
-    case LEDGER_WATCH:
-        return STYLE_STRONG;
-    case LEDGER_FILLING:
-    case LEDGER_ABSENT:
-        return STYLE_FAINT;
-    case LEDGER_QUIET:
-        break;
+    int decimals = quantity_decimals(unit_span_from_si(&unit, ledger->unexplained.u), 2);
+    char terms[400], rest[200];
+    const char *gap = "  ";
+    for (;;) {
+        sum_text(ledger, &unit, decimals, gap, terms, rest, sizeof(rest));
+        if (column + canvas_width(canvas, terms) + canvas_width(canvas, rest) <= end)
+            break;
+        if (gap[1] != '\0')
+            gap++;
+        else if (decimals-- == 0)
+            break;
     }
-    return STYLE_NORMAL;
-}
-
-static void draw_needle(const struct ledger *ledger, struct canvas *canvas, int row, int column)
-{
-    char marks[NEEDLE + 1];
-    bool usable = quantity_usable(ledger->unexplained) && ledger->unexplained.u > 0 &&
-                  ledger->word != LEDGER_ABSENT;
-    memset(marks, ' ', NEEDLE);
-    marks[NEEDLE] = '\0';
-    marks[NEEDLE / 2] = '|';
-    marks[NEEDLE / 2 - 3] = marks[NEEDLE / 2 + 3] = ':';
-    canvas_format(canvas, row, column, STYLE_FAINT, "[%s]", marks);
-    if (usable) {
-        double z = ledger->unexplained.value / ledger->unexplained.u;
-        double at = z * (NEEDLE / 2) / 5;
-        double most = NEEDLE / 2;
-        at = at > most ? most : at < -most ? -most : at;
-        canvas_text(canvas, row, column + 1 + NEEDLE / 2 + (int)lround(at),
-                    ledger->word == LEDGER_FINDING ? STYLE_CAUTION : STYLE_STRONG, "◆");
-    }
-    canvas_text(canvas, row, column + NEEDLE + 3, word_style(ledger->word),
-                ledger_word_text(ledger->word));
+    column = canvas_text(canvas, row, column, live ? STYLE_NORMAL : STYLE_STALE, terms);
+    canvas_text(canvas, row, column, live ? STYLE_STRONG : STYLE_STALE, rest);
 }
 
 /* ---- the lines under it
  * -------------------------------------------------------------------------- */
 
-static void part(char *dst, size_t size, const struct view *view, enum derived_id id, int thing,
-                 const char *label, bool with_u)
+static void add(struct flow *flow, const char *label, const char *value)
 {
-    int tag = plant_derived_tag(view->plant, id, thing);
-    char value[80];
-    if (tag < 0) {
-        *dst = '\0';
-        return;
-    }
-    const struct unit *unit = plant_tag_shown(view->plant, tag);
-    struct quantity q = view_quantity(view, id, thing);
-    if (with_u)
-        format_quantity(value, sizeof(value), q, unit);
-    else
-        format_plain(value, sizeof(value), q, unit);
-    text_format(dst, size, "%s%s", label, value);
+    flow_part(flow, label, STYLE_NORMAL, value);
 }
 
-static void heat_lines(const struct view *view, const struct ledger *ledger, char *one,
-                       char *two, size_t size)
+static void add_tag(struct flow *flow, const struct view *view, int tag, const char *before,
+                    bool with_u, const char *behind)
 {
-    const struct plant *plant = view->plant;
-    const struct vessel *vessel = &plant->vessel[ledger->thing];
+    char value[120], age[60];
+    if (tag < 0)
+        return;
+    enum quality quality = view_tag(view, tag, NULL).quality;
+    format_tag(value, sizeof(value), view, tag, with_u);
+    format_age(age, sizeof(age), view, tag);
+    text_format(value + strlen(value), sizeof(value) - strlen(value), "%s%s", behind, age);
+    flow_part(flow, before, quality_style(quality), value);
+}
+
+static void add_derived(struct flow *flow, const struct view *view, enum derived_id id,
+                        int thing, const char *before, bool with_u, const char *behind)
+{
+    add_tag(flow, view, plant_derived_tag(view->plant, id, thing), before, with_u, behind);
+}
+
+/* The same, left out where there is nothing to say yet. */
+static void add_known(struct flow *flow, const struct view *view, enum derived_id id, int thing,
+                      const char *before, bool with_u, const char *behind)
+{
+    if (view_quantity(view, id, thing).quality != QUALITY_MISSING)
+        add_derived(flow, view, id, thing, before, with_u, behind);
+}
+
+static void heat_lines(const struct view *view, int index, struct flow *flow)
+{
+    const struct vessel *vessel = &view->plant->vessel[index];
     const struct unit watt = unit_si(DIMENSION_POWER);
-    part(one, size, view, DERIVED_VESSEL_HEAT_LOAD, ledger->thing, "heat load ", true);
-    *two = '\0';
+    char text[80];
+    add_derived(flow, view, DERIVED_VESSEL_HEAT_LOAD, index, "heat load ", true, "");
     if (vessel->has_heat_budget) {
-        char budget[40];
-        format_plain(budget, sizeof(budget), quantity_good(vessel->heat_budget_w, 0), &watt);
-        text_format(two, size, "budget %s, ", budget);
+        format_plain(text, sizeof(text), quantity_good(vessel->heat_budget_w, 0), &watt);
+        add(flow, "budget ", text);
     }
+    flow_line(flow, flow->pen->area.columns);
     if (vessel->condenser >= 0) {
-        char rated[40] = "";
-        part(two + strlen(two), size - strlen(two), view, DERIVED_CONDENSER_DUTY,
-             vessel->condenser, "cooling ", false);
-        format_plain(rated, sizeof(rated),
-                     quantity_good(plant->condenser[vessel->condenser].rated_duty_w, 0), &watt);
-        if (plant->condenser[vessel->condenser].rated_duty_w > 0)
-            text_format(two + strlen(two), size - strlen(two), " of %s", rated);
+        double rated_w = view->plant->condenser[vessel->condenser].rated_duty_w;
+        char of[48] = "";
+        format_plain(text, sizeof(text), quantity_good(rated_w, 0), &watt);
+        if (rated_w > 0)
+            text_format(of, sizeof(of), " of %s", text);
+        add_derived(flow, view, DERIVED_CONDENSER_DUTY, vessel->condenser, "cooling ", false,
+                    of);
     }
-    struct quantity hold = view_quantity(view, DERIVED_VESSEL_HOLD_TIME, ledger->thing);
+    struct quantity hold = view_quantity(view, DERIVED_VESSEL_HOLD_TIME, index);
     if (quantity_usable(hold)) {
-        char span[40];
-        time_format_span(span, sizeof(span), hold.value);
-        text_format(two + strlen(two), size - strlen(two), "%srelief in < %s",
-                    *two != '\0' ? ", else " : "", span);
+        time_format_span(text, sizeof(text), hold.value);
+        text_format(text + strlen(text), sizeof(text) - strlen(text), " to relief at most");
+        add(flow, "if cooling stops: ", text);
     }
 }
 
-static void mass_lines(const struct view *view, const struct ledger *ledger, char *one,
-                       char *two, size_t size)
+static void mass_lines(const struct view *view, int index, struct flow *flow)
 {
-    char fill[60], daily[60];
-    part(one, size, view, DERIVED_VESSEL_LIQUID_MASS, ledger->thing, "liquid ", true);
-    part(fill, sizeof(fill), view, DERIVED_VESSEL_FILL, ledger->thing, "", false);
-    text_format(two, size, "%s full, ", fill);
-    part(two + strlen(two), size - strlen(two), view, DERIVED_VESSEL_BOIL_OFF, ledger->thing,
-         "boil-off ", true);
-    part(daily, sizeof(daily), view, DERIVED_VESSEL_BOIL_OFF_DAILY, ledger->thing, "", false);
-    text_format(two + strlen(two), size - strlen(two), ", %s", daily);
+    add_derived(flow, view, DERIVED_VESSEL_LIQUID_MASS, index, "liquid ", true, "");
+    add_derived(flow, view, DERIVED_VESSEL_FILL, index, "", false, " full");
+    flow_line(flow, flow->pen->area.columns);
+    add_derived(flow, view, DERIVED_VESSEL_BOIL_OFF, index, "boil-off ", true, "");
+    add_derived(flow, view, DERIVED_VESSEL_BOIL_OFF_DAILY, index, "", false, "");
 }
 
-static void purity_lines(const struct view *view, const struct ledger *ledger, char *one,
-                         char *two, size_t size)
+static void purity_lines(const struct view *view, int index, struct flow *flow)
 {
     const struct plant *plant = view->plant;
-    *one = *two = '\0';
-    for (int i = 0; i < plant->drift_count && *one == '\0'; i++) {
-        if (plant->drift[i].vessel != ledger->thing)
+    for (int i = 0; i < plant->drift_count; i++) {
+        if (plant->drift[i].vessel != index)
             continue;
-        char oxygen[60];
-        format_plain(oxygen, sizeof(oxygen), view_ref(view, &plant->drift[i].oxygen),
-                     &plant->drift[i].oxygen.unit);
-        text_format(one, size, "%s O2, ", oxygen);
-        part(one + strlen(one), size - strlen(one), view, DERIVED_DRIFT_LIFETIME, i,
-             "lifetime ", true);
+        if (plant->drift[i].oxygen.kind == REF_TAG)
+            add_tag(flow, view, plant->drift[i].oxygen.tag, "oxygen ", true, "");
+        add_derived(flow, view, DERIVED_DRIFT_LIFETIME, i, "lifetime ", true, "");
+        break;
     }
-    int purifier = plant->vessel[ledger->thing].purifier;
+    int purifier = plant->vessel[index].purifier;
+    flow_line(flow, flow->pen->area.columns);
     if (purifier < 0) {
-        text_copy(two, size, "no purifier is described");
+        add(flow, "", "no purifier is described");
         return;
     }
-    part(two, size, view, DERIVED_PURIFIER_EFFICIENCY, purifier, "purifier takes ", true);
-    char used[60];
-    part(used, sizeof(used), view, DERIVED_PURIFIER_LOADING, purifier, ", used ", false);
-    struct quantity loading = view_quantity(view, DERIVED_PURIFIER_LOADING, purifier);
-    if (quantity_usable(loading))
-        text_format(two + strlen(two), size - strlen(two), "%s", used);
+    char name[80];
+    text_format(name, sizeof(name), "purifier %s", plant->purifier[purifier].name);
+    add(flow, "", name);
+    add_known(flow, view, DERIVED_PURIFIER_EFFICIENCY, purifier, "takes ", false, "");
+    add_known(flow, view, DERIVED_PURIFIER_LOADING, purifier, "", false, " used");
+    add_known(flow, view, DERIVED_PURIFIER_TIME_TO_SPENT, purifier, "", false, " left");
 }
 
-static void air_lines(const struct view *view, const struct ledger *ledger, char *one,
-                      char *two, size_t size)
+/* "lowest 20.9 %" "of 3 (AT-402)" */
+static void add_lowest(struct flow *flow, const struct view *view, int index)
 {
-    const struct hall *hall = &view->plant->hall[ledger->thing];
-    char lowest[60], spread[60], flow[60];
-    part(lowest, sizeof(lowest), view, DERIVED_HALL_OXYGEN_LOWEST, ledger->thing, "", false);
-    part(spread, sizeof(spread), view, DERIVED_HALL_SPREAD, ledger->thing, "", false);
-    text_format(one, size, "%s O2 lowest of %d, spread %s", lowest, hall->oxygen.count, spread);
-    *two = '\0';
-    if (hall->fan_running.kind == REF_TAG) {
-        struct quantity fan = view_ref(view, &hall->fan_running);
-        text_format(two, size, "fan %s",
-                    !quantity_usable(fan) ? "unknown"
-                    : fan.value != 0      ? "on"
-                                          : "OFF");
+    const struct hall *hall = &view->plant->hall[index];
+    const char *name = NULL;
+    double lowest = 0;
+    for (int i = 0; i < hall->oxygen.count; i++) {
+        struct quantity q = view_ref(view, &hall->oxygen.at[i]);
+        if (quantity_usable(q) && (name == NULL || q.value < lowest)) {
+            name = ref_name(view, &hall->oxygen.at[i]);
+            lowest = q.value;
+        }
     }
-    if (hall->ventilation.kind != REF_NONE) {
-        format_plain(flow, sizeof(flow), view_ref(view, &hall->ventilation),
-                     &hall->ventilation.unit);
-        text_format(two + strlen(two), size - strlen(two), "%s%s", *two != '\0' ? " " : "air ",
-                    flow);
-    }
+    char of[100];
+    text_format(of, sizeof(of), " of %d%s%s%s", hall->oxygen.count, name != NULL ? " (" : "",
+                name != NULL ? name : "", name != NULL ? ")" : "");
+    add_derived(flow, view, DERIVED_HALL_OXYGEN_LOWEST, index, "oxygen lowest ", false, of);
+}
+
+static void add_bit(struct flow *flow, const struct view *view, const struct ref *ref,
+                    const char *label, const char *on, const char *off, bool on_is_well)
+{
+    if (ref->kind != REF_TAG)
+        return;
+    struct quantity q = view_ref(view, ref);
+    bool well = quantity_usable(q) && (q.value != 0) == on_is_well;
+    flow_part(flow, label, well ? STYLE_NORMAL : STYLE_CAUTION,
+              !quantity_usable(q) ? "unknown"
+              : q.value != 0      ? on
+                                  : off);
+}
+
+static void air_lines(const struct view *view, int index, struct flow *flow)
+{
+    const struct hall *hall = &view->plant->hall[index];
+    add_lowest(flow, view, index);
+    flow_line(flow, flow->pen->area.columns);
+    add_known(flow, view, DERIVED_HALL_SPREAD, index, "spread ", false, "");
+    add_bit(flow, view, &hall->fan_running, "fan ", "on", "OFF", true);
+    if (hall->ventilation.kind == REF_TAG)
+        add_tag(flow, view, hall->ventilation.tag, "air ", false, "");
     if (hall->occupied.kind == REF_TAG) {
         struct quantity people = view_ref(view, &hall->occupied);
-        text_format(two + strlen(two), size - strlen(two), ", %s",
-                    !quantity_usable(people) ? "people inside: unknown"
-                    : people.value != 0      ? "people inside"
-                                             : "nobody inside");
+        add(flow, "people inside: ",
+            !quantity_usable(people) ? "unknown"
+            : people.value != 0      ? "yes"
+                                     : "no");
     }
-}
-
-/* ---- trend
- * -------------------------------------------------------------------------------------- */
-
-static void draw_trend(const struct view *view, int tag, struct pen *pen, int row, int column,
-                       int width)
-{
-    static const char *const bars[] = {"▁", "▂", "▃", "▄", "▅", "▆", "▇", "█"};
-    struct trend_column columns[SCREEN_COLUMNS_MAX];
-    double low = HUGE_VAL, high = -HUGE_VAL;
-    if (view->engine == NULL || tag < 0 || width < 16 || row < 0)
-        return;
-    if (width > 60)
-        width = 60;
-    engine_trend(view->engine, tag, TREND_SPAN_S, columns, width);
-    for (int i = 0; i < width; i++) {
-        if (!columns[i].set)
-            continue;
-        low = fmin(low, columns[i].low);
-        high = fmax(high, columns[i].high);
-    }
-    if (!(low <= high))
-        return;
-    for (int i = 0; i < width; i++) {
-        double middle = 0.5 * (columns[i].low + columns[i].high);
-        int step = high > low ? (int)((middle - low) / (high - low) * 7.999) : 3;
-        canvas_text(pen->canvas, row, column + i, STYLE_FAINT,
-                    columns[i].set ? bars[step < 0   ? 0
-                                          : step > 7 ? 7
-                                                     : step]
-                                   : " ");
-    }
-    const struct unit *own = plant_tag_shown(view->plant, tag);
-    char from[60], to[60];
-    format_plain(from, sizeof(from), quantity_good(low, 0.01 * (high - low)), own);
-    format_plain(to, sizeof(to), quantity_good(high, 0.01 * (high - low)), own);
-    canvas_format(pen->canvas, row + 1, column, STYLE_FAINT, "%s, last 4 h: %s to %s",
-                  plant_tag_name(view->plant, tag), from, to);
 }
 
 /* ---- a ledger
  * ------------------------------------------------------------------------------------ */
 
+static void draw_trend(const struct view *view, int tag, struct pen *pen, int row, int column)
+{
+    struct trend_column columns[SCREEN_COLUMNS_MAX];
+    int width = pen->area.columns - column - 2;
+    if (view->engine == NULL || tag < 0 || width < 16 || row < 0)
+        return;
+    width = width > 80 ? 80 : width;
+    double low, high;
+    engine_trend(view->engine, tag, TREND_SPAN_S, columns, width);
+    if (!trend_draw(columns, width, pen->canvas, row, column, &low, &high))
+        return;
+    const struct unit *own = plant_tag_shown(view->plant, tag);
+    char from[60], to[60], text[240];
+    format_plain(from, sizeof(from), quantity_good(low, 0.01 * (high - low)), own);
+    format_plain(to, sizeof(to), quantity_good(high, 0.01 * (high - low)), own);
+    text_format(text, sizeof(text), "%s to %s in 4 h: %s", from, to,
+                plant_tag_name(view->plant, tag));
+    canvas_fit(pen->canvas, row + 1, column, width, STYLE_FAINT, text);
+}
+
+/* The sum, or why there is none. */
+static int draw_head(const struct view *view, const struct ledger *ledger, bool chosen,
+                     int left, struct pen *pen)
+{
+    struct canvas *canvas = pen->canvas;
+    struct pen first = *pen;
+    int row = pen_line(&first), columns = pen->area.columns;
+    struct quantity rest = view_as_of_now(view, ledger->unexplained);
+    bool summed = ledger->word != LEDGER_ABSENT && quantity_usable(ledger->unexplained);
+    canvas_text(canvas, row, 0, STYLE_STRONG, chosen ? "▸" : " ");
+    canvas_text(canvas, row, 1, STYLE_STRONG, ledger_kind_word(ledger->kind));
+    canvas_fit(canvas, row, NAME, left - NAME - 1, STYLE_NORMAL, thing_name(view, ledger));
+    if (!summed) {
+        enum style style = ledger->word == LEDGER_BLIND ? STYLE_CAUTION : STYLE_FAINT;
+        if (pen_wrap(pen, left, style,
+                     ledger->reason[0] != '\0' ? ledger->reason : "no reason is told") == 0)
+            pen_line(pen);
+        return row;
+    }
+    pen_line(pen);
+    if (ledger->kind == LEDGER_AIR) {
+        const struct unit flow = unit_si(DIMENSION_MASS_FLOW);
+        char release[80];
+        format_quantity(release, sizeof(release), rest, &flow);
+        int column = canvas_text(canvas, row, left, STYLE_NORMAL, "release ");
+        canvas_text(canvas, row, column,
+                    rest.quality == QUALITY_STALE ? STYLE_STALE : STYLE_STRONG, release);
+    } else {
+        draw_sum(ledger, rest.quality != QUALITY_STALE, canvas, row, left,
+                 columns >= WIDE ? WIDE_NEEDLE + NEEDLE_COLUMNS : columns);
+    }
+    return row;
+}
+
 static void draw_ledger(const struct view *view, const struct ledger *ledger, bool chosen,
                         int left, struct pen *pen)
 {
-    char one[200] = "", two[200] = "";
-    struct canvas *canvas = pen->canvas;
-    int first = pen_line(pen), second = pen_line(pen), third = pen_line(pen);
-    canvas_text(canvas, first, 0, chosen ? STYLE_STRONG : STYLE_FAINT, chosen ? "▸" : " ");
-    canvas_format(canvas, first, 1, STYLE_STRONG, "%s", ledger_kind_word(ledger->kind));
-    canvas_text(canvas, first, 8, STYLE_NORMAL, thing_name(view, ledger));
-    bool summed = quantity_usable(ledger->unexplained) && ledger->word != LEDGER_ABSENT;
-    if (summed && ledger->kind != LEDGER_AIR) {
-        draw_sum(view, ledger, canvas, first, left);
-    } else if (summed) {
-        char release[80];
-        const struct unit flow = unit_si(DIMENSION_MASS_FLOW);
-        format_quantity(release, sizeof(release), ledger->unexplained, &flow);
-        canvas_format(canvas, first, left, STYLE_NORMAL, "release %s", release);
-    } else {
-        canvas_text(canvas, first, left,
-                    ledger->word == LEDGER_BLIND ? STYLE_CAUTION : STYLE_FAINT, ledger->reason);
-    }
+    int columns = pen->area.columns;
+    int needle = columns >= WIDE ? WIDE_NEEDLE : columns - NEEDLE_COLUMNS - 1;
+    bool known = ledger->word != LEDGER_ABSENT && quantity_usable(ledger->unexplained);
+    int row = draw_head(view, ledger, chosen, left, pen);
+    struct flow flow = flow_begin(pen, NAME, needle - 1);
+    needle_draw(ledger, known && !view->stale, pen->canvas, flow.row, needle);
+    if (columns >= WIDE)
+        draw_trend(view, trend_tag(view, ledger), pen, row, needle + NEEDLE_COLUMNS + 4);
     switch (ledger->kind) {
     case LEDGER_HEAT:
-        heat_lines(view, ledger, one, two, sizeof(one));
+        heat_lines(view, ledger->thing, &flow);
         break;
     case LEDGER_MASS:
-        mass_lines(view, ledger, one, two, sizeof(one));
+        mass_lines(view, ledger->thing, &flow);
         break;
     case LEDGER_PURITY:
-        purity_lines(view, ledger, one, two, sizeof(one));
+        purity_lines(view, ledger->thing, &flow);
         break;
     case LEDGER_AIR:
-        air_lines(view, ledger, one, two, sizeof(one));
+        air_lines(view, ledger->thing, &flow);
         break;
     }
-    canvas_text(canvas, second, left, STYLE_NORMAL, one);
-    draw_needle(ledger, canvas, second, NEEDLE_COLUMN);
-    canvas_text(canvas, third, left, STYLE_NORMAL, two);
-    if (pen->area.columns >= WIDE)
-        draw_trend(view, trend_tag(view, ledger), pen, first, 88, pen->area.columns - 90);
-    pen_line(pen);
+    if (known && ledger->unexplained.quality == QUALITY_UNCERTAIN && ledger->reason[0] != '\0')
+        pen_wrap(pen, NAME, STYLE_CAUTION, ledger->reason);
 }
 
 static void draw(const struct view *view, const struct panel_state *state, struct pen *pen)
 {
     const struct results *results = view->results;
-    size_t longest = 9;
+    int longest = 9;
     for (int i = 0; i < results->ledger_count; i++) {
-        size_t length = strlen(thing_name(view, &results->ledger[i]));
-        longest = length > longest ? length : longest;
+        int width = canvas_width(pen->canvas, thing_name(view, &results->ledger[i]));
+        longest = width > longest ? width : longest;
     }
-    int left = 8 + (int)(longest > 14 ? 14 : longest) + 1;
-    for (int i = 0; i < results->ledger_count; i++)
+    int left = NAME + (longest > NAME_COLUMNS ? NAME_COLUMNS : longest) + 1;
+    for (int i = 0; i < results->ledger_count; i++) {
+        if (i > 0)
+            pen_line(pen);
+        if (i == state->selected)
+            pen_chosen_begin(pen);
         draw_ledger(view, &results->ledger[i], i == state->selected, left, pen);
+        if (i == state->selected)
+            pen_chosen_end(pen);
+    }
     if (results->ledger_count == 0)
         canvas_text(pen->canvas, pen_line(pen), 1, STYLE_NORMAL,
                     "No vessel and no hall is described, so there is no ledger to keep.");
@@ -367,7 +376,6 @@ const struct panel panel_ledgers = {
     .key = '1',
     .asks = "does it add up?",
     .count = ledger_count,
-    .line_of = line_of,
     .why = why,
     .draw = draw,
 };

@@ -9,14 +9,11 @@
 
 #include "panel.h"
 
+enum { VALUE = 26 };
+
 static int count(const struct view *view)
 {
     return plant_tag_count(view->plant);
-}
-
-static int line_of(const struct view *view, int row)
-{
-    return row + 1 + (plant_tag_is_point(view->plant, row) ? 0 : 2);
 }
 
 static int why(const struct view *view, int row)
@@ -24,46 +21,72 @@ static int why(const struct view *view, int row)
     return row < count(view) ? row : -1;
 }
 
-static void draw_row(const struct view *view, int tag, bool chosen, struct pen *pen)
+/* Columns by the longest name of a part, so that no value begins in a name. */
+static int longest_name(const struct view *view, const struct canvas *canvas, int from, int to)
+{
+    int longest = 8;
+    for (int tag = from; tag < to; tag++) {
+        int width = canvas_width(canvas, plant_tag_name(view->plant, tag));
+        longest = width > longest ? width : longest;
+    }
+    return longest > 36 ? 36 : longest;
+}
+
+static void draw_row(const struct view *view, int tag, int name_columns, bool chosen,
+                     struct pen *pen)
 {
     const char *reason;
-    struct quantity q = view_tag(view, tag, &reason);
-    const struct unit *unit = plant_tag_shown(view->plant, tag);
-    char value[80], age[40] = "";
+    char value[120], text[300], age[40] = "";
+    bool point = plant_tag_is_point(view->plant, tag);
     int row = pen_line(pen);
     if (row < 0)
         return;
-    if (plant_tag_is_point(view->plant, tag))
-        format_reading(value, sizeof(value), q, unit);
-    else
-        format_quantity(value, sizeof(value), q, unit);
-    if (plant_tag_is_point(view->plant, tag) && view->frame->sample[tag].read_utc_ns != 0)
+    struct quantity q = view_tag(view, tag, &reason);
+    format_tag(value, sizeof(value), view, tag, true);
+    if (point && view->frame->sample[tag].read_utc_ns != 0)
         time_format_span(age, sizeof(age), frame_age_s(view->frame, tag));
     canvas_text(pen->canvas, row, 0, STYLE_STRONG, chosen ? "▸" : " ");
-    canvas_text(pen->canvas, row, 1, STYLE_NORMAL, plant_tag_name(view->plant, tag));
-    int column = plant_tag_is_point(view->plant, tag) ? 14 : 34;
-    canvas_text(pen->canvas, row, column, quality_style(q.quality), value);
-    if (plant_tag_is_point(view->plant, tag)) {
-        canvas_format(pen->canvas, row, 38, quality_style(q.quality), "%-9s %6s",
-                      quality_word(q.quality), age);
-        canvas_format(pen->canvas, row, 55, STYLE_FAINT, "%s%s%s", reason,
-                      *reason != '\0' ? ": " : "", plant_tag_says(view->plant, tag));
-    } else {
-        canvas_format(pen->canvas, row, 55, STYLE_FAINT, "%s",
-                      q.quality == QUALITY_GOOD ? plant_tag_says(view->plant, tag) : reason);
+    canvas_fit(pen->canvas, row, 1, name_columns, STYLE_NORMAL,
+               plant_tag_name(view->plant, tag));
+    int at = name_columns + 3;
+    canvas_text(pen->canvas, row, at, quality_style(q.quality), value);
+    at += VALUE;
+    canvas_format(pen->canvas, row, at, quality_style(q.quality), "%-9s",
+                  quality_word(q.quality));
+    at += 10;
+    if (point) {
+        canvas_format(pen->canvas, row, at, STYLE_NORMAL, "%9s", age);
+        at += 11;
     }
+    text_format(text, sizeof(text), "%s%s%s", reason, *reason != '\0' ? "; " : "",
+                plant_tag_says(view->plant, tag));
+    canvas_fit(pen->canvas, row, at, pen->area.columns - at, STYLE_FAINT, text);
+}
+
+static void draw_head(struct pen *pen, int name_columns, const char *what, bool age)
+{
+    int row = pen_line(pen), at = name_columns + 3;
+    canvas_text(pen->canvas, row, 1, STYLE_FAINT, what);
+    canvas_text(pen->canvas, row, at, STYLE_FAINT, "value");
+    canvas_text(pen->canvas, row, at + VALUE, STYLE_FAINT, "quality");
+    if (age)
+        canvas_format(pen->canvas, row, at + VALUE + 10, STYLE_FAINT, "%9s", "age");
 }
 
 static void draw(const struct view *view, const struct panel_state *state, struct pen *pen)
 {
-    canvas_format(pen->canvas, pen_line(pen), 1, STYLE_FAINT, "%-12s %-23s %-9s %6s  %s",
-                  "point", "reads", "quality", "age", "what it is");
+    int points = view->plant->point_count;
+    int columns = longest_name(view, pen->canvas, 0, points);
+    draw_head(pen, columns, "point", true);
     for (int tag = 0; tag < count(view); tag++) {
-        if (tag == view->plant->point_count) {
+        if (tag == points) {
+            columns = longest_name(view, pen->canvas, points, count(view));
             pen_line(pen);
-            canvas_text(pen->canvas, pen_line(pen), 1, STYLE_FAINT, "derived quantities");
+            draw_head(pen, columns, "derived", false);
         }
-        draw_row(view, tag, tag == state->selected, pen);
+        if (tag == state->selected)
+            pen_chosen_begin(pen);
+        draw_row(view, tag, columns, tag == state->selected, pen);
     }
 }
 
@@ -72,7 +95,6 @@ const struct panel panel_points = {
     .key = '8',
     .asks = "what does each instrument say?",
     .count = count,
-    .line_of = line_of,
     .why = why,
     .draw = draw,
 };

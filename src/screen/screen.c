@@ -44,6 +44,7 @@ static void open_panel(struct screen *screen, int index)
     if (panels[screen->panel] != &panel_why && panels[screen->panel] != &panel_help)
         screen->before = screen->panel;
     screen->panel = index;
+    screen->state[index] = (struct panel_state){.id = -1};
 }
 
 static int index_of(const struct panel *panel)
@@ -83,126 +84,44 @@ void screen_message(struct screen *screen, const char *text)
 /* ---- drawing
  * --------------------------------------------------------------------------------- */
 
-static void draw_title(const struct view *view, struct canvas *canvas)
+/* The chosen row keeps what it stands for where rows change places; until the operator has
+ * chosen, it is the first. */
+static void hold_choice(const struct panel *panel, const struct view *view,
+                        struct panel_state *state)
 {
-    char right[160], clock[40] = "no frame yet", mode[48];
-    int columns = canvas_columns(canvas);
-    if (view->utc_ns != 0)
-        format_clock(clock, sizeof(clock), view->utc_ns);
-    text_copy(mode, sizeof(mode), view_mode_word(view->mode));
-    if (!view->ready) {
-        text_copy(mode, sizeof(mode), "WAITING");
-    } else if (view->stale) {
-        char age[32];
-        time_format_span(age, sizeof(age), view->stale_s);
-        if (view->stale_s > 0)
-            text_format(mode, sizeof(mode), "STALE %s", age);
-        else
-            text_copy(mode, sizeof(mode), "STALE, nothing read");
+    int count = panel->count != NULL ? panel->count(view) : 0;
+    if (panel->count == NULL || panel == &panel_why)
+        return;
+    if (panel->id_of != NULL) {
+        int wanted = state->selected;
+        state->selected = 0;
+        for (int row = 0; state->held && row < count; row++)
+            if (panel->id_of(view, row) == state->id) {
+                wanted = row;
+                break;
+            }
+        if (state->held)
+            state->selected = wanted;
     }
-    int alarms = view->alarms != NULL    ? alarm_unacknowledged(view->alarms)
-                 : view->results != NULL ? view->results->unacknowledged
-                                         : 0;
-    text_format(right, sizeof(right), "  %s  %s   links %d/%d   alarms %d", mode, clock,
-                view->links_up, view->plant->link_count, alarms);
-    enum style style = view->stale && view->ready ? STYLE_DANGER : STYLE_TITLE;
-    for (int column = 0; column < columns; column++)
-        canvas_text(canvas, 0, column, style, " ");
-    canvas_text(canvas, 0, 0, style,
-                view->plant->site.name != NULL ? view->plant->site.name : "");
-    int start = columns - (int)strlen(right);
-    canvas_text(canvas, 0, start > 0 ? start : 0, style, right);
+    state->selected = state->selected < count ? state->selected : count > 0 ? count - 1 : 0;
+    state->id = panel->id_of == NULL ? state->selected
+                : count > 0          ? panel->id_of(view, state->selected)
+                                     : -1;
 }
 
-static enum style banner_style(enum banner_level level)
-{
-    switch (level) {
-    case BANNER_DANGER:
-        return STYLE_DANGER;
-    case BANNER_CAUTION:
-        return STYLE_CAUTION;
-    case BANNER_NOTE:
-        break;
-    }
-    return STYLE_NORMAL;
-}
-
-/* Writes text from a row on, each line behind prefix, at most most lines; the cut is shown. */
-static int draw_wrapped(struct canvas *canvas, int row, int most, const char *prefix,
-                        enum style style, const char *text)
-{
-    int columns = canvas_columns(canvas), indent = (int)strlen(prefix), used = 0;
-    const char *at = text;
-    while (*at != '\0' && used < most) {
-        size_t length = wrap_length(at, columns - indent - 1);
-        char line[SCREEN_COLUMNS_MAX * 4 + 1];
-        text_format(line, sizeof(line), "%s%.*s", prefix, (int)length, at);
-        int end = canvas_text(canvas, row + used, 0, style, line);
-        for (; style == STYLE_DANGER && end < columns; end++)
-            canvas_text(canvas, row + used, end, style, " ");
-        at += length;
-        while (*at == ' ')
-            at++;
-        used++;
-    }
-    if (*at != '\0' && used > 0)
-        canvas_text(canvas, row + used - 1, columns - 1, style, "…");
-    return used;
-}
-
-/* The banners and the advisory line; returns the first free row. */
-static int draw_banners(const struct view *view, struct canvas *canvas)
-{
-    int row = 1, rows = canvas_rows(canvas);
-    const struct banner_list *banners = view->results != NULL ? &view->results->banners : NULL;
-    int room = rows >= 40 ? 8 : rows >= 30 ? 6 : 4;
-    if (view->stale && view->ready)
-        row +=
-            draw_wrapped(canvas, row, 2, "!! ", STYLE_DANGER,
-                         "NOTHING HERE IS LIVE: no reading arrives. Old values are shown dim. "
-                         "Act on site rules and local instruments.");
-    int shown = 0;
-    for (int i = 0; banners != NULL && i < banners->count; i++) {
-        const struct banner *banner = &banners->at[i];
-        int most = shown == 0 ? (rows >= 40 ? 6 : 3) : 2;
-        if (most > room)
-            break;
-        const char *prefix = banner->level == BANNER_DANGER ? "!! " : "!  ";
-        int used =
-            draw_wrapped(canvas, row, most, prefix, banner_style(banner->level), banner->text);
-        row += used;
-        room -= used;
-        shown++;
-    }
-    if (banners != NULL && banners->count + banners->more > shown)
-        canvas_format(canvas, row++, 0, STYLE_CAUTION, "!  and %d more; key b lists them all",
-                      banners->count + banners->more - shown);
-    char advisory[320];
-    banner_advisory(advisory, sizeof(advisory), view->plant);
-    return row + draw_wrapped(canvas, row, 3, "", STYLE_ADVISORY, advisory);
-}
-
-static void draw_foot(const struct screen *screen, struct canvas *canvas)
-{
-    int row = canvas_rows(canvas) - 1, column = 0;
-    int gap = canvas_columns(canvas) >= 100 ? 3 : 1;
-    for (int i = 0; i < panel_count(); i++) {
-        if (panels[i] == &panel_why)
-            continue;
-        enum style style = i == screen->panel ? STYLE_STRONG : STYLE_FAINT;
-        const char *name = panels[i] == &panel_help ? "keys" : panels[i]->name;
-        column = canvas_format(canvas, row, column, style, "%c %s", panels[i]->key, name);
-        column += gap;
-    }
-    for (int i = 0; i < key_help_count(); i++)
-        if (key_helps[i].foot != NULL)
-            column = canvas_text(canvas, row, column, STYLE_FAINT, key_helps[i].foot) + gap;
-}
-
-/* Keeps the scroll within the last drawing's lines. */
-static void hold_scroll(struct panel_state *state)
+/* Scrolls no further than the lines go, and so that the chosen row is in sight. */
+static void hold_scroll(struct panel_state *state, const struct pen *pen, bool first, bool last)
 {
     int most = state->lines - state->height;
+    if (pen != NULL && pen->chosen_to > pen->chosen_from) {
+        int from = first ? 0 : pen->chosen_from, to = last ? state->lines : pen->chosen_to;
+        if (to > state->scroll + state->height)
+            state->scroll = to - state->height;
+        if (from < state->scroll)
+            state->scroll = from;
+        if (pen->chosen_from < state->scroll)
+            state->scroll = pen->chosen_from;
+    }
     if (state->scroll > most)
         state->scroll = most;
     if (state->scroll < 0)
@@ -214,28 +133,45 @@ static void draw_panel(struct screen *screen, const struct view *view, struct ca
 {
     const struct panel *panel = panels[screen->panel];
     struct panel_state *state = &screen->state[screen->panel];
-    if (panel->count != NULL) {
-        int count = panel->count(view);
-        if (state->selected >= count)
-            state->selected = count > 0 ? count - 1 : 0;
-    }
+    hold_choice(panel, view, state);
     state->height = area->rows;
-    /* Drawn twice when its lines are fewer than the scroll believed: the second is the picture.
-     */
+    canvas_clip(canvas, area);
+    /* Drawn once more when it turns out that another part of it has to be in sight. */
     for (int pass = 0; pass < 2; pass++) {
         struct pen pen = {.canvas = canvas, .area = *area, .scroll = state->scroll};
-        canvas_clip(canvas, area);
         for (int row = 0; row < area->rows; row++)
-            for (int column = 0; column < area->columns; column++)
-                canvas_text(canvas, area->row + row, area->column + column, STYLE_NORMAL, " ");
+            canvas_fill(canvas, area->row + row, area->column, STYLE_NORMAL);
         panel->draw(view, state, &pen);
-        canvas_clip(canvas, NULL);
         state->lines = pen.line;
         int before = state->scroll;
-        hold_scroll(state);
+        bool last = panel->count != NULL && state->selected == panel->count(view) - 1;
+        hold_scroll(state, &pen, state->selected == 0, last);
         if (before == state->scroll)
             break;
     }
+    if (view->stale) {
+        canvas_restyle(canvas, STYLE_NORMAL, STYLE_STALE);
+        canvas_restyle(canvas, STYLE_STRONG, STYLE_STALE);
+    }
+    canvas_clip(canvas, NULL);
+}
+
+/* The line above the foot: a message, and whether the panel goes on. */
+static void draw_message(const struct screen *screen, struct canvas *canvas, int row)
+{
+    const struct panel_state *state = &screen->state[screen->panel];
+    int below = state->lines - state->scroll - state->height;
+    char more[80] = "";
+    if (state->scroll > 0 && below > 0)
+        text_format(more, sizeof(more), "%d lines above, %d below", state->scroll, below);
+    else if (below > 0)
+        text_format(more, sizeof(more), "%d more line%s below", below, below == 1 ? "" : "s");
+    else if (state->scroll > 0)
+        text_format(more, sizeof(more), "%d line%s above", state->scroll,
+                    state->scroll == 1 ? "" : "s");
+    int start = canvas_columns(canvas) - (int)strlen(more) - 1;
+    canvas_fit(canvas, row, 0, start - 2, STYLE_STRONG, screen->message);
+    canvas_text(canvas, row, start, STYLE_FAINT, more);
 }
 
 void screen_draw(struct screen *screen, const struct view *view, struct canvas *canvas)
@@ -243,27 +179,19 @@ void screen_draw(struct screen *screen, const struct view *view, struct canvas *
     int columns = canvas_columns(canvas), rows = canvas_rows(canvas);
     canvas_clear(canvas);
     if (columns < SCREEN_COLUMNS_MIN || rows < SCREEN_ROWS_MIN) {
-        canvas_format(canvas, 0, 0, STYLE_STRONG, "%dx%d is too small;", columns, rows);
-        canvas_format(canvas, 1, 0, STYLE_STRONG, "%dx%d is needed.", SCREEN_COLUMNS_MIN,
-                      SCREEN_ROWS_MIN);
-        canvas_text(canvas, 2, 0, STYLE_ADVISORY, "ADVISORY ONLY.");
+        layout_small(view, canvas);
         return;
     }
-    draw_title(view, canvas);
-    int top = draw_banners(view, canvas) + 1;
-    struct area area = {.row = top, .rows = rows - 1 - top, .columns = columns};
-    if (screen->message[0] != '\0') {
-        area.rows--;
-        canvas_text(canvas, rows - 2, 0, STYLE_STRONG, screen->message);
-    }
-    if (!view->ready)
-        canvas_text(canvas, top, 1, STYLE_NORMAL, "Waiting for the first whole frame.");
-    else
+    layout_title(view, canvas);
+    int top = layout_banners(view, canvas, 1) + 1;
+    struct area area = {.row = top, .rows = rows - 2 - top, .columns = columns};
+    if (view->ready) {
         draw_panel(screen, view, canvas, &area);
-    const struct panel_state *state = &screen->state[screen->panel];
-    if (view->ready && state->lines > state->scroll + area.rows)
-        canvas_text(canvas, top + area.rows - 1, columns - 6, STYLE_STRONG, " more ");
-    draw_foot(screen, canvas);
+        draw_message(screen, canvas, rows - 2);
+    } else {
+        canvas_text(canvas, top, 1, STYLE_NORMAL, "Waiting for the first whole frame.");
+    }
+    layout_foot(panels[screen->panel], canvas);
 }
 
 /* ---- keys
@@ -272,22 +200,20 @@ void screen_draw(struct screen *screen, const struct view *view, struct canvas *
 static void move(const struct panel *panel, const struct view *view, struct panel_state *state,
                  int by)
 {
-    int count = panel->count != NULL ? panel->count(view) : 0;
     if (panel->count == NULL || panel == &panel_why) {
         state->scroll += by;
-        hold_scroll(state);
+        hold_scroll(state, NULL, false, false);
         return;
     }
+    hold_choice(panel, view, state);
+    int count = panel->count(view);
     long wanted = (long)state->selected + by;
     state->selected = wanted < 0        ? 0
                       : wanted >= count ? (count > 0 ? count - 1 : 0)
                                         : (int)wanted;
-    int line = panel->line_of != NULL ? panel->line_of(view, state->selected) : state->selected;
-    if (line < state->scroll + 1)
-        state->scroll = line > 0 ? line - 1 : 0;
-    if (line + 4 > state->scroll + state->height)
-        state->scroll = line + 4 - state->height;
-    hold_scroll(state);
+    state->held = state->selected > 0;
+    if (panel->id_of != NULL && count > 0)
+        state->id = panel->id_of(view, state->selected);
 }
 
 static void open_why(struct screen *screen, const struct view *view)
@@ -324,7 +250,9 @@ static enum screen_request common_key(struct screen *screen, const struct view *
         if (panel == &panel_why || panel == &panel_help)
             screen->panel = screen->before;
         return SCREEN_REDRAW;
-    case SCREEN_KEY_TAB:
+    case SCREEN_KEY_TAB: /* why, the last of the table, is no panel of its own */
+        if (panel == &panel_why)
+            screen->panel = screen->before;
         open_panel(screen, (screen->panel + 1) % (panel_count() - 1));
         return SCREEN_REDRAW;
     case SCREEN_KEY_UP:

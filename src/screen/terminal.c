@@ -13,11 +13,12 @@
 #include <locale.h>
 #include <stdlib.h>
 #include <string.h>
+#include <termios.h>
 #include <unistd.h>
 #include <wchar.h>
 
+#include "canvas.h"
 #include "terminal_type.h"
-#include "ullage/screen.h"
 
 struct terminal {
     SCREEN *curses;
@@ -57,6 +58,17 @@ static void choose_looks(struct terminal *terminal)
     }
 }
 
+/* A stray Ctrl-S must not freeze a picture that looks live. */
+static void no_flow_control(void)
+{
+    struct termios modes;
+    if (tcgetattr(STDIN_FILENO, &modes) != 0)
+        return;
+    modes.c_iflag &= ~(tcflag_t)(IXON | IXOFF);
+    if (tcsetattr(STDIN_FILENO, TCSANOW, &modes) == 0)
+        def_prog_mode();
+}
+
 int terminal_open(const struct terminal_options *options, struct terminal **out,
                   struct error *err)
 {
@@ -75,13 +87,16 @@ int terminal_open(const struct terminal_options *options, struct terminal **out,
     struct terminal *terminal = calloc(1, sizeof(*terminal));
     if (terminal == NULL)
         return error_set(err, ERR_MEMORY, "no memory for the terminal");
-    terminal->ascii = options->ascii || strcmp(nl_langinfo(CODESET), "UTF-8") != 0;
+    /* The kernel's console takes UTF-8, but its font has few of our drawing characters. */
+    terminal->ascii = options->ascii || strcmp(nl_langinfo(CODESET), "UTF-8") != 0 ||
+                      strcmp(term, "linux") == 0;
     terminal->curses = newterm(NULL, stdout, stdin);
     if (terminal->curses == NULL) {
         free(terminal);
         return error_set(err, ERR_IO, "the terminal of type '%s' cannot be used", term);
     }
     cbreak();
+    no_flow_control();
     noecho();
     nonl();
     keypad(stdscr, TRUE);
@@ -156,6 +171,19 @@ int64_t terminal_key(struct terminal *terminal)
     return (int64_t)key;
 }
 
+/* What the C library takes for another width would move the rest of the line: it is shown as
+ * '?', and a blank where its right half would be. */
+static wchar_t shown_rune(const struct canvas *canvas, int row, int column)
+{
+    const struct cell *cell = canvas_cell(canvas, row, column);
+    if (cell == NULL)
+        return L' ';
+    if (cell->rune == 0)
+        return shown_rune(canvas, row, column - 1) == L'?' ? L' ' : L'\0';
+    bool agreed = wcwidth((wchar_t)cell->rune) == rune_width(cell->rune);
+    return agreed ? (wchar_t)cell->rune : L'?';
+}
+
 void terminal_show(struct terminal *terminal, const struct canvas *canvas)
 {
     int columns, rows;
@@ -163,13 +191,11 @@ void terminal_show(struct terminal *terminal, const struct canvas *canvas)
     for (int row = 0; row < rows; row++)
         for (int column = 0; column < columns; column++) {
             const struct cell *cell = canvas_cell(canvas, row, column);
-            if (cell != NULL && cell->rune == 0)
-                continue;
-            wchar_t text[2] = {cell != NULL ? (wchar_t)cell->rune : L' ', L'\0'};
+            wchar_t text[2] = {shown_rune(canvas, row, column), L'\0'};
             enum style style = cell != NULL ? cell->style : STYLE_NORMAL;
             cchar_t shown;
-            if (setcchar(&shown, text, terminal->attribute[style], terminal->pair[style],
-                         NULL) == OK)
+            if (text[0] != L'\0' && setcchar(&shown, text, terminal->attribute[style],
+                                             terminal->pair[style], NULL) == OK)
                 mvadd_wch(row, column, &shown);
         }
     refresh();
