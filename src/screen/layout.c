@@ -20,7 +20,7 @@ static int unacknowledged(const struct view *view)
 }
 
 /* Where the numbers come from; a stopped source is told before all else. */
-static void mode_text(char *dst, size_t size, const struct view *view, bool brief)
+static void mode_text(char *dst, size_t size, const struct view *view)
 {
     char age[32];
     time_format_span(age, sizeof(age), view->stale_s);
@@ -30,22 +30,22 @@ static void mode_text(char *dst, size_t size, const struct view *view, bool brie
         text_format(dst, size, "STALE %s", age);
     else if (view->stale)
         text_copy(dst, size, "STALE, nothing read");
-    else if (view->mode == VIEW_DEMO && brief)
-        text_copy(dst, size, "DEMO simulated");
     else
         text_copy(dst, size, view_mode_word(view->mode));
 }
 
+enum { TITLE_STEPS = 4 };
+
 /* The right part of the title, shorter with each step. */
 static void title_text(char *dst, size_t size, const struct view *view, int step)
 {
-    static const char *const gaps[] = {"   ", "  ", "  ", " ", " "};
+    static const char *const gaps[] = {"   ", "  ", " ", " "};
     char mode[48], clock[40] = "no frame yet";
     const char *gap = gaps[step];
     if (view->utc_ns != 0)
         format_clock(clock, sizeof(clock), view->utc_ns);
-    mode_text(mode, sizeof(mode), view, step >= 2);
-    const char *time = step == 4 && strlen(clock) > 11 ? clock + 11 : clock;
+    mode_text(mode, sizeof(mode), view);
+    const char *time = step == TITLE_STEPS - 1 && strlen(clock) > 11 ? clock + 11 : clock;
     text_format(dst, size, "%s%s%s%slinks %d/%d%salarms %d", mode, gap, time, gap,
                 view->links_up, view->plant->link_count, gap, unacknowledged(view));
 }
@@ -56,7 +56,7 @@ void layout_title(const struct view *view, struct canvas *canvas)
     int columns = canvas_columns(canvas), room = 0;
     const char *site = view->plant->site.name != NULL ? view->plant->site.name : "";
     enum style style = view->stale && view->ready ? STYLE_DANGER : STYLE_TITLE;
-    for (int step = 0; step < 5; step++) {
+    for (int step = 0; step < TITLE_STEPS; step++) {
         title_text(right, sizeof(right), view, step);
         room = columns - canvas_width(canvas, right) - 2;
         if (room >= canvas_width(canvas, site))
