@@ -54,7 +54,7 @@ say = $(if $(V),,@printf '  %-4s %s\n' '$(1)' '$(2)')
 obj     = $(patsubst %.c,$(BUILD)/%.o,$(1))
 TESTS   := $(patsubst %.c,$(BUILD)/%,$(TEST_SRC))
 BENCHES := $(patsubst %.c,$(BUILD)/%,$(BENCH_SRC))
-SCRIPTS := $(sort $(wildcard tests/*/check_*))
+SCRIPTS := $(filter-out %.h %.c %.py,$(sort $(wildcard tests/*/check_*)))
 
 # 'make check ROOMS="base fluid"' runs those only; 'make check WITHOUT=house' all others.
 ROOMS  ?=
