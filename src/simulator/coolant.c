@@ -8,7 +8,7 @@
 #include "model.h"
 
 /* Pinch, subcooling before the valve, superheat behind it, K; pressure before over behind. */
-static const double PINCH_K = 2.5, SUBCOOLING_K = 4, SUPERHEAT_K = 1.5, LET_DOWN = 1.2;
+static const double PINCH_K = 4, SUBCOOLING_K = 4, SUPERHEAT_K = 3, LET_DOWN = 1.2;
 
 int coolant_model_init(struct coolant_model *coolant, const struct condenser *described,
                        double vessel_temperature_k, struct error *err)
