@@ -67,6 +67,8 @@ static inline void rig_init(struct rig *rig)
                                        .kind = THING_HALL,
                                        .id = DERIVED_HALL_OXYGEN_LOWEST,
                                        .unit = rig_unit("%")};
+    for (int i = 0; i < TAGS - POINTS; i++)
+        rig->derived[i].shown = rig->derived[i].unit;
     /* OSHA 29 CFR 1910.146: deficient below 19.5 %; 18 % evacuate: common practice,
      * methods 7.6.
      */
