@@ -139,7 +139,7 @@ lint: ## static checks by the tools that are installed
 
 doc: $(MAN:docs/%=$(BUILD)/doc/%.html) ## manual pages as HTML in $(BUILD)/doc
 	@mkdir -p $(BUILD)/doc
-	cp README.md DEVELOPERS.md $(wildcard docs/*.md) $(BUILD)/doc
+	cp $(wildcard *.md docs/*.md) $(BUILD)/doc
 
 $(BUILD)/doc/%.html: docs/%
 	@mkdir -p $(@D)

@@ -165,14 +165,17 @@ def layout(root):
     """C is laid out by .clang-format. None if clang-format is not installed."""
     if shutil.which("clang-format") is None:
         return None
-    complaints = []
-    for path in c_files(root, "src", "include", "tests"):
-        done = subprocess.run(["clang-format", "--dry-run", "-Werror", "--style=file", path],
-                              cwd=root, stderr=subprocess.PIPE, text=True, check=False)
-        if done.returncode != 0:
-            first = done.stderr.splitlines()[0] if done.stderr else path
-            complaints.append(f"{first} (make format mends it)")
-    return complaints
+    done = subprocess.run(["clang-format", "--dry-run", "-Werror", "--style=file",
+                           *c_files(root, "src", "include", "tests")],
+                          cwd=root, stderr=subprocess.PIPE, text=True, check=False)
+    first = {}
+    for line in done.stderr.splitlines():
+        found = re.match(r"([^:\s]+\.[ch]):\d+:\d+: error", line)
+        if found:
+            first.setdefault(found.group(1), f"{line} (make format mends it)")
+    if done.returncode != 0 and not first:
+        return [done.stderr]
+    return list(first.values())
 
 
 RULES = (rooms, headers, licences, top_level, read_only, length, words, layout)
