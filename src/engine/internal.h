@@ -142,6 +142,7 @@ struct vessel_state {
     double start_s[TRACK_COUNT]; /* of the present regime, in the window's time */
     int64_t pushed_utc_ns;       /* last frame in the window; 0: none */
     int64_t heat_utc_ns;         /* last frame at which every enthalpy was known */
+    bool heat_rejected;          /* and whether one has been missing since */
     double interval_s;           /* usual time between frames */
     bool rejected;               /* a frame stayed outside since the last that did not */
     struct verdict lost;         /* why */

@@ -140,7 +140,8 @@ void vessel_publish(struct engine *engine, struct vessel_state *state)
     struct verdict rate = under_loss(&state->pressure_rate_verdict, &loss);
     publish_heat(engine, state, &heat);
     publish_mass(engine, state, &mass);
-    publish_boil_off(engine, state, &loss);
+    /* Vapour condensed inside is known by the duty only. */
+    publish_boil_off(engine, state, state->cooling_unmetered ? &heat_loss : &loss);
     engine_derive(engine, DERIVED_VESSEL_PRESSURE_RATE, state->index, &state->pressure_rate,
                   &rate);
 }

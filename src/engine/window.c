@@ -97,14 +97,18 @@ bool vessel_window_push(struct engine *engine, struct vessel_state *state)
         for (int i = 0; i < TRACK_COUNT; i++)
             state->start_s[i] = 0;
         state->heat_utc_ns = engine->utc_ns;
+        state->heat_rejected = false;
     }
     if (verdict_usable(&state->heat_verdict)) {
         /* Half a minute may be bridged with the last enthalpy. */
-        if (engine->utc_ns - state->heat_utc_ns > 30 * NS_PER_S)
+        if (state->heat_rejected && engine->utc_ns - state->heat_utc_ns > 30 * NS_PER_S)
             state->start_s[TRACK_HEAT] = now_s;
         state->heat_utc_ns = engine->utc_ns;
-    } else if (began) {
-        state->heat_utc_ns = engine->utc_ns - 31 * NS_PER_S;
+        state->heat_rejected = false;
+    } else {
+        state->heat_rejected = true;
+        if (began) /* nothing to bridge from */
+            state->heat_utc_ns = engine->utc_ns - 31 * NS_PER_S;
     }
     state->pushed_utc_ns = engine->utc_ns;
     return opened;
