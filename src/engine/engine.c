@@ -112,6 +112,8 @@ static int create_memory(struct engine *engine)
     engine->duty = arena_take(arena, (size_t)plant->condenser_count + 1, sizeof(*engine->duty));
     engine->duty_verdict =
         arena_take(arena, (size_t)plant->condenser_count + 1, sizeof(*engine->duty_verdict));
+    engine->coolant_line = arena_take(arena, 2 * (size_t)plant->condenser_count + 1,
+                                      sizeof(*engine->coolant_line));
     engine->hall = arena_take(arena, (size_t)plant->hall_count + 1, sizeof(*engine->hall));
     engine->hall_safety =
         arena_take(arena, (size_t)plant->hall_count + 1, sizeof(*engine->hall_safety));
@@ -121,10 +123,11 @@ static int create_memory(struct engine *engine)
     engine->weights.rate = arena_take(arena, blocks, sizeof(double));
     engine->balance = arena_take(arena, blocks, sizeof(double));
     if (engine->scatter == NULL || engine->vessel == NULL || engine->duty == NULL ||
-        engine->duty_verdict == NULL || engine->hall == NULL || engine->hall_safety == NULL ||
-        engine->alarm_input == NULL || engine->weights.slope == NULL ||
-        engine->weights.rate == NULL || engine->balance == NULL ||
-        frame_init(&engine->frame, plant, arena) != 0 || trend_create(engine) != 0)
+        engine->duty_verdict == NULL || engine->coolant_line == NULL || engine->hall == NULL ||
+        engine->hall_safety == NULL || engine->alarm_input == NULL ||
+        engine->weights.slope == NULL || engine->weights.rate == NULL ||
+        engine->balance == NULL || frame_init(&engine->frame, plant, arena) != 0 ||
+        trend_create(engine) != 0)
         return ERR_MEMORY;
     for (int i = 0; i < plant->vessel_count; i++)
         if (vessel_create(engine, i) != 0)

@@ -190,7 +190,7 @@ struct hall_state {
 int hall_create(struct engine *engine, int index);
 void hall_step(struct engine *engine, int index, double elapsed_s);
 
-/* ---- things.c
+/* ---- condenser.c, things.c
  * --------------------------------------------------------------------------------- */
 
 void condenser_step(struct engine *engine, int index);
@@ -230,6 +230,7 @@ struct engine {
     struct vessel_state *vessel;
     struct estimate *duty; /* per condenser */
     struct verdict *duty_verdict;
+    struct fluid_saturation *coolant_line; /* two per condenser: in, out; near the pressure */
     struct hall_state *hall;
     struct hall_safety *hall_safety;
     struct alarm_set *alarms;

@@ -87,7 +87,11 @@ static int enthalpy_of_stream(const struct vessel_state *state, struct vessel_st
         flow->u_model_j_kg = 0.1 * U_STREAM_LIQUID_K * h->by_temperature;
         return 0;
     }
-    int code = enthalpy_at(stream->fluid, 0, flow->pressure.value, phase, true, h, err);
+    int code = 0;
+    if (flow->pressure.value == state->pressure.value) /* the line is at hand */
+        enthalpy_of_line(&state->contents.line, phase, h);
+    else
+        code = enthalpy_at(stream->fluid, 0, flow->pressure.value, phase, true, h, err);
     if (code == 0)
         flow->u_model_j_kg = liquid ? U_STREAM_LIQUID_K * state->contents.line.liquid.cp_j_kg_k
                                     : U_STREAM_VAPOUR_K * state->contents.line.vapour.cp_j_kg_k;

@@ -2,7 +2,7 @@
 /* Copyright the ullage authors */
 
 /*
- * What needs no window: condensers, pumps, purifiers, drift, shafts, deliveries, each from this
+ * What needs no window: pumps, purifiers, drift, shafts, deliveries, each from this
  * frame's readings.
  */
 #include "internal.h"
@@ -15,106 +15,30 @@ static void missing(struct verdict *verdict, const char *what)
     verdict_doubt(verdict, QUALITY_MISSING, "the plant file gives no %s", what);
 }
 
-/* ---- condensers
- * ------------------------------------------------------------------------------- */
-
-struct side {
-    struct input pressure, temperature;
-    struct enthalpy h;
-    double u_model_j_kg;
-};
-
-/* Enthalpy of the coolant on one side. In: liquid unless clearly warmer than saturation. Out:
- * vapour; one that leaves at saturation may carry liquid over, which no thermometer can tell.
- */
-static void read_side(const struct engine *engine, const struct condenser *condenser, bool in,
-                      struct side *side, struct verdict *verdict)
-{
-    side->pressure = input_pressure(engine, in ? &condenser->coolant_in_pressure
-                                               : &condenser->coolant_out_pressure);
-    side->temperature = input_of(engine, in ? &condenser->coolant_in_temperature
-                                            : &condenser->coolant_out_temperature);
-    input_judge(engine, &side->pressure, in ? "coolant_in_pressure" : "coolant_out_pressure",
-                verdict);
-    if (side->temperature.described)
-        input_judge(engine, &side->temperature, "coolant temperature", verdict);
-    if (!verdict_usable(verdict))
-        return;
-    struct fluid_saturation line;
-    struct fluid_state state;
-    struct error err;
-    if (fluid_saturation_at_p(condenser->coolant, side->pressure.value, &line, &err) != 0) {
-        verdict_doubt(verdict, QUALITY_BAD, "coolant: %.100s", err.text);
-        return;
-    }
-    enthalpy_of_line(&line, in ? FLUID_PHASE_LIQUID : FLUID_PHASE_VAPOUR, &side->h);
-    side->u_model_j_kg = side->temperature.described ? 0 : line.liquid.cp_j_kg_k;
-    if (!side->temperature.described)
-        return;
-    double above = side->temperature.value - line.temperature_k;
-    double u = side->temperature.parts > 0 ? side->temperature.part[0].u : 0;
-    double tolerance = 3 * hypot(u, 0.1);
-    enum fluid_phase phase = !in                 ? FLUID_PHASE_VAPOUR
-                             : above < tolerance ? FLUID_PHASE_LIQUID
-                                                 : FLUID_PHASE_VAPOUR;
-    if (!in && above < -tolerance) {
-        verdict_doubt(verdict, QUALITY_BAD, "coolant of %s leaves as liquid", condenser->name);
-        return;
-    }
-    if (!in && above < tolerance)
-        verdict_doubt(verdict, QUALITY_UNCERTAIN,
-                      "coolant of %s leaves at saturation: may carry liquid", condenser->name);
-    if (phase_at(condenser->coolant, side->temperature.value, side->pressure.value, phase,
-                 &state, &err) == 0)
-        enthalpy_of_state(&state, &side->h);
-    else
-        verdict_doubt(verdict, QUALITY_BAD, "coolant: %.100s", err.text);
-}
-
-void condenser_step(struct engine *engine, int index)
-{
-    const struct condenser *condenser = &engine->plant->condenser[index];
-    struct verdict *verdict = &engine->duty_verdict[index];
-    struct side in = {.u_model_j_kg = 0}, out = in;
-    *verdict = (struct verdict){0};
-    struct input flow = input_of(engine, &condenser->coolant_flow);
-    input_judge(engine, &flow, "coolant_flow", verdict);
-    read_side(engine, condenser, true, &in, verdict);
-    read_side(engine, condenser, false, &out, verdict);
-    struct verdict margin = *verdict;
-    if (!(condenser->rated_duty_w > 0)) {
-        margin = (struct verdict){0};
-        missing(&margin, "rated_duty");
-    }
-    struct estimate *duty = &engine->duty[index], left = {.count = 0};
-    if (verdict_usable(verdict)) {
-        double per = 1;
-        struct fluid_state normal;
-        if (condenser->coolant_flow.unit.dimension == DIMENSION_VOLUME_FLOW)
-            per = in.h.density_kg_m3;
-        else if (condenser->coolant_flow.unit.dimension == DIMENSION_NORMAL_FLOW &&
-                 fluid_at_tp(condenser->coolant, 273.15, 101325, FLUID_PHASE_ANY, &normal,
-                             NULL) == 0)
-            per = normal.density_kg_m3;
-        double rise = out.h.value_j_kg - in.h.value_j_kg, mass = per * flow.value;
-        estimate_exact(duty, mass * rise);
-        input_add_u(duty, per * rise, &flow);
-        input_add_u(duty, mass * out.h.by_temperature, &out.temperature);
-        input_add_u(duty, mass * out.h.by_pressure, &out.pressure);
-        input_add_u(duty, -mass * in.h.by_temperature, &in.temperature);
-        input_add_u(duty, -mass * in.h.by_pressure, &in.pressure);
-        estimate_add_term(duty, source_of(SOURCE_COOLANT_STATE, index),
-                          mass * hypot(in.u_model_j_kg, out.u_model_j_kg));
-        left = *duty;
-        estimate_scale(&left, -1);
-        left.value += condenser->rated_duty_w;
-    }
-    engine_derive(engine, DERIVED_CONDENSER_DUTY, index, duty, verdict);
-    engine_derive(engine, DERIVED_CONDENSER_MARGIN, index, &left, &margin);
-}
-
 /* ---- pumps
  * ------------------------------------------------------------------------------------ */
+
+/* Vapour pressure of the liquid at a temperature near the vessel's saturation:
+ * Clausius-Clapeyron from the line at hand (ln p linear in 1/T: 1e-5 over a kelvin), else the
+ * line itself. */
+static int vapour_pressure(const struct vessel_state *vessel, double temperature_k,
+                           double *pressure_pa, double *slope_pa_k, struct error *err)
+{
+    const struct fluid_saturation *at = &vessel->contents.line;
+    if (fabs(temperature_k - at->temperature_k) < 1) {
+        double t0 = at->temperature_k, b = at->dp_dt_pa_k * t0 * t0 / at->pressure_pa;
+        *pressure_pa = at->pressure_pa * exp(b * (1 / t0 - 1 / temperature_k));
+        *slope_pa_k = *pressure_pa * b / (temperature_k * temperature_k);
+        return 0;
+    }
+    struct fluid_saturation line;
+    int code = fluid_saturation_at_t(vessel->vessel->fluid, temperature_k, &line, err);
+    if (code == 0) {
+        *pressure_pa = line.pressure_pa;
+        *slope_pa_k = line.dp_dt_pa_k;
+    }
+    return code;
+}
 
 static void pump_step(struct engine *engine, int index)
 {
@@ -126,28 +50,26 @@ static void pump_step(struct engine *engine, int index)
     bool measured = suction.described || !vessel->contents_input.liquid_saturated;
     double temperature =
         suction.described ? suction.value : vessel->contents.liquid.temperature_k;
-    struct fluid_saturation line;
+    double vapour_pa = vessel->pressure.value, slope_pa_k = 0;
     struct error err;
     if (suction.described)
         input_judge(engine, &suction, "suction_temperature", &verdict);
-    if (verdict_usable(&verdict) &&
-        fluid_saturation_at_t(vessel->vessel->fluid, temperature, &line, &err) != 0)
+    if (verdict_usable(&verdict) && measured &&
+        vapour_pressure(vessel, temperature, &vapour_pa, &slope_pa_k, &err) != 0)
         verdict_doubt(&verdict, QUALITY_BAD, "%.110s", err.text);
     if (verdict_usable(&verdict)) {
-        double weight = line.liquid.density_kg_m3 * 9.80665;
+        double density = vessel->contents.liquid.density_kg_m3, weight = density * 9.80665;
         double head = vessel->contents_input.level_m - pump->suction_depth_m;
-        double surface = vessel->pressure.value;
-        estimate_exact(&npsh, pump_npsh_m(surface, measured ? line.pressure_pa : surface,
-                                          line.liquid.density_kg_m3, head));
+        estimate_exact(&npsh, pump_npsh_m(vessel->pressure.value, vapour_pa, density, head));
         input_add_u(&npsh, 1, &vessel->level);
         if (measured)
             input_add_u(&npsh, 1 / weight, &vessel->pressure);
         if (suction.described)
-            input_add_u(&npsh, -line.dp_dt_pa_k / weight, &suction);
+            input_add_u(&npsh, -slope_pa_k / weight, &suction);
         else if (measured)
             estimate_add_term(
                 &npsh, source_of(SOURCE_LIQUID_TEMPERATURE, pump->vessel),
-                -line.dp_dt_pa_k / weight *
+                -slope_pa_k / weight *
                     hypot(vessel->u_liquid_mean_k, vessel->thermometer[0].part[0].u));
         left = npsh;
         left.value -= pump->npsh_required_m;
