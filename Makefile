@@ -132,7 +132,7 @@ format: ## lay out the C files by .clang-format
 	clang-format -i $(FORMATTED)
 
 format-check: ## fail if a C file is laid out otherwise
-	clang-format --dry-run -Werror $(FORMATTED)
+	@clang-format --dry-run -Werror $(FORMATTED)
 
 lint: ## static checks by the tools that are installed
 	@tests/lint $(SRC) -- $(MAN)
