@@ -183,6 +183,9 @@ void engine_derive(struct engine *engine, enum derived_id id, int thing,
     if (index < 0)
         return;
     struct derived_value *value = &engine->results.derived[index];
+    struct verdict senseless = {0};
+    if (verdict_usable(verdict) && !verdict_finite(estimate, &senseless))
+        verdict = &senseless;
     if (verdict_usable(verdict)) {
         engine->estimate[index] = *estimate;
         value->quantity = (struct quantity){

@@ -431,6 +431,16 @@ static void evaluate_hold_time(struct engine *engine, struct vessel_state *state
         input_add_u(&state->hold_time, mass * by_relief / heat.value, &barometer);
 }
 
+static void judge_sense(enum track track, struct balance_result *balance)
+{
+    (void)verdict_finite(&balance->unexplained, &balance->verdict);
+    if (track == TRACK_VAPOUR)
+        return;
+    (void)verdict_finite(&balance->in, &balance->verdict);
+    (void)verdict_finite(&balance->out, &balance->verdict);
+    (void)verdict_finite(&balance->stored, &balance->verdict);
+}
+
 void vessel_evaluate(struct engine *engine, struct vessel_state *state)
 {
     struct work work = {
@@ -454,6 +464,7 @@ void vessel_evaluate(struct engine *engine, struct vessel_state *state)
         else
             balance_vapour(&work, &line, balance);
         judge_gaps(&work, track, balance);
+        judge_sense(track, balance);
     }
     evaluate_pressure_rate(engine, state);
     evaluate_hold_time(engine, state);

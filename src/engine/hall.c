@@ -232,6 +232,7 @@ static void evaluate_release(struct engine *engine, int index, const struct moni
     estimate_add_term(&out->rate, source_of(SOURCE_HALL_NOISE, index),
                       hall->volume_m3 / per * line.u_slope);
     estimate_scale(&out->rate, out->density_kg_m3);
+    (void)verdict_finite(&out->rate, &out->verdict);
 }
 
 static void set_air_ledger(struct engine *engine, int index, const struct release *release)

@@ -29,7 +29,12 @@ void scatter_step(struct engine *engine, const struct frame *frame)
             double step = sample->value - scatter->last;
             if (scatter->count < SCATTER_MEMORY)
                 scatter->count++;
-            scatter->variance += (0.5 * step * step - scatter->variance) / scatter->count;
+            /* A jump is no scatter: more than twice u tells nothing about the constant part. */
+            double most = 4 * sample->u * sample->u, square = 0.5 * step * step;
+            square = square < most ? square : most;
+            if (!(scatter->variance < most))
+                scatter->variance = most;
+            scatter->variance += (square - scatter->variance) / scatter->count;
         }
         scatter->read_utc_ns = sample->read_utc_ns;
         scatter->last = sample->value;

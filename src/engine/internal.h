@@ -24,6 +24,8 @@ void verdict_doubt(struct verdict *verdict, enum quality quality, const char *fm
     PRINTF_LIKE(3, 4);
 void verdict_join(struct verdict *verdict, const struct verdict *other);
 bool verdict_usable(const struct verdict *verdict);
+/* False, and bad, where readings are so far from sense that the result is no number. */
+bool verdict_finite(const struct estimate *estimate, struct verdict *verdict);
 
 /* ---- inputs.c: references to readings
  * --------------------------------------------------------- */

@@ -6,6 +6,7 @@
  */
 #include "internal.h"
 
+#include <math.h>
 #include <stdio.h>
 
 void verdict_doubt(struct verdict *verdict, enum quality quality, const char *fmt, ...)
@@ -36,4 +37,15 @@ void verdict_filling(struct verdict *verdict, double to_go_s)
     char span[40];
     time_format_span(span, sizeof(span), to_go_s > 1 ? to_go_s : 1);
     verdict_doubt(verdict, QUALITY_MISSING, "filling: %s to go", span);
+}
+
+bool verdict_finite(const struct estimate *estimate, struct verdict *verdict)
+{
+    double u = estimate_u(estimate);
+    if (isfinite(estimate->value) && isfinite(u) && fabs(estimate->value) < 1e100 && u < 1e100)
+        return true;
+    verdict_doubt(verdict, QUALITY_BAD,
+                  "a reading is out of all reason; give the point a valid "
+                  "range");
+    return false;
 }

@@ -233,15 +233,17 @@ static void derive_inventory(struct engine *engine, struct vessel_state *state)
     if (state->contents_input.vapour_saturated)
         estimate_add_term(&vapour, source_of(SOURCE_VAPOUR_TEMPERATURE, state->index),
                           vapour.value * U_VAPOUR_MEAN_K / c->vapour.temperature_k);
-    estimate_exact(&fill, c->liquid_volume_m3.value / c->volume_m3);
-    input_add_u(&fill, c->surface_m2 / c->volume_m3, &state->level);
+    const struct shape *shape = &state->vessel->shape; /* fill needs the level only */
+    double level = state->contents_input.level_m, volume = shape_volume_m3(shape);
+    estimate_exact(&fill, shape_volume_at_m3(shape, level) / volume);
+    input_add_u(&fill, shape_surface_at_m2(shape, level) / volume, &state->level);
     engine_derive(engine, DERIVED_VESSEL_LIQUID_MASS, state->index, liquid,
                   &state->contents_verdict);
     engine_derive(engine, DERIVED_VESSEL_VAPOUR_MASS, state->index, &vapour,
                   &state->contents_verdict);
-    struct verdict level = {0};
-    input_judge(engine, &state->level, "level", &level);
-    engine_derive(engine, DERIVED_VESSEL_FILL, state->index, &fill, &level);
+    struct verdict of_level = {0};
+    input_judge(engine, &state->level, "level", &of_level);
+    engine_derive(engine, DERIVED_VESSEL_FILL, state->index, &fill, &of_level);
 }
 
 /* Saturation needs the pressure only; subcooling the liquid's thermometers too. */

@@ -118,23 +118,29 @@ static void test_closed_vessel_pressurises_and_tells_its_hold_time(void **state)
     rig_close(&rig);
 }
 
-/* Saturated vapour that must leave for the body to be at a pressure: U(p, m - dm) = U - dm h,
- * linear in dm but for what h changes. */
+static double pressure_after(const struct body *body, double gone)
+{
+    struct body next = *body;
+    next.mass_kg -= gone;
+    next.energy_j -= gone * body->line.vapour.enthalpy_j_kg;
+    body_settle(&next);
+    return next.line.pressure_pa;
+}
+
+/* Saturated vapour that must leave for the body to be at a pressure; secant, nearly linear. */
 static double vent_to(const struct body *body, double pressure_pa)
 {
-    double low = -1000, high = 1000;
-    for (int i = 0; i < 60; i++) {
-        double gone = 0.5 * (low + high);
-        struct body next = *body;
-        next.mass_kg -= gone;
-        next.energy_j -= gone * body->line.vapour.enthalpy_j_kg;
-        body_settle(&next);
-        if (next.line.pressure_pa > pressure_pa)
-            low = gone;
-        else
-            high = gone;
+    double gone = 0, before = 1, miss_before = pressure_after(body, before) - pressure_pa;
+    for (int i = 0; i < 4; i++) {
+        double miss = pressure_after(body, gone) - pressure_pa;
+        if (fabs(miss) < 1e-7 || miss == miss_before)
+            break;
+        double next = gone - miss * (gone - before) / (miss - miss_before);
+        before = gone;
+        miss_before = miss;
+        gone = next;
     }
-    return 0.5 * (low + high);
+    return gone;
 }
 
 static void test_a_falling_barometer_does_not_look_like_heat(void **state)
