@@ -120,6 +120,10 @@ check-tsan: ## the rooms with threads under the thread sanitizer
 	@$(MAKE) --no-print-directory check ROOMS="base field service simulator" BUILD=build/tsan \
 	    CFLAGS='-O1 -g -fsanitize=thread'
 
+golden: $(BUILD)/tests/screen/test_golden ## draw the pictures in tests/golden anew, to be reviewed
+	@ULLAGE_GOLDEN=write $<
+	@git diff --stat -- tests/golden 2>/dev/null || true
+
 bench: $(BENCHES) $(BUILD)/ullage ## print speeds, the figure to reach beside each
 	@for bench in $(BENCHES); do echo "$$bench"; BUILD='$(BUILD)' $$bench || exit 1; done
 
@@ -178,7 +182,7 @@ clean: ## remove $(BUILD)
 help: ## list the targets
 	@sed -n 's/^\([a-z-]*\):[^#]*## \(.*\)/  make \1	\2/p' Makefile | expand -t 20
 
-.PHONY: all tests check run-tests check-asan check-tsan bench demo format format-check lint doc \
+.PHONY: all tests check run-tests check-asan check-tsan golden bench demo format format-check lint doc \
         install uninstall dist clean help always
 .SECONDARY:
 -include $(patsubst %.c,$(BUILD)/%.d,$(SRC) $(TEST_SRC) $(BENCH_SRC))

@@ -72,7 +72,7 @@ void canvas_write_styles(const struct canvas *canvas, FILE *out);
 
 /* What is on screen besides the view: chosen panel, selection, scroll, help. */
 struct screen;
-int screen_create(bool ascii, struct screen **out, struct error *err) MUST_CHECK;
+int screen_create(struct screen **out, struct error *err) MUST_CHECK;
 void screen_free(struct screen *screen);
 /* Chooses a panel by name. 0 or ERR_ARGUMENT with the nearest name. */
 int screen_panel(struct screen *screen, const char *name, struct error *err) MUST_CHECK;

@@ -170,6 +170,20 @@ int canvas_width(const struct canvas *canvas, const char *text)
     return width;
 }
 
+/* Bytes of text that take at most width columns. */
+static size_t bytes_within(const struct canvas *canvas, const char *text, int width)
+{
+    const char *at = text;
+    while (*at != '\0' && at - text < TEXT_MAX - 5) {
+        const char *next = at;
+        width -= width_of(canvas, next_rune(&next));
+        if (width < 0)
+            break;
+        at = next;
+    }
+    return (size_t)(at - text);
+}
+
 int canvas_fit(struct canvas *canvas, int row, int column, int width, enum style style,
                const char *text)
 {
@@ -178,18 +192,23 @@ int canvas_fit(struct canvas *canvas, int row, int column, int width, enum style
     if (canvas_width(canvas, text) <= width)
         return canvas_text(canvas, row, column, style, text);
     char part[TEXT_MAX];
-    int used = 0;
-    const char *at = text;
-    for (;;) {
-        const char *next = at;
-        int more = width_of(canvas, next_rune(&next));
-        if (used + more > width - 1 || next - text >= (long)sizeof(part))
-            break;
-        used += more;
-        at = next;
-    }
-    text_format(part, sizeof(part), "%.*s", (int)(at - text), text);
-    return canvas_text(canvas, row, canvas_text(canvas, row, column, style, part), style, "…");
+    text_format(part, sizeof(part), "%.*s…", (int)bytes_within(canvas, text, width - 1), text);
+    return canvas_text(canvas, row, column, style, part);
+}
+
+int canvas_fit_name(struct canvas *canvas, int row, int column, int width, enum style style,
+                    const char *name)
+{
+    if (canvas_width(canvas, name) <= width)
+        return canvas_text(canvas, row, column, style, name);
+    const char *tail = name;
+    while (canvas_width(canvas, tail) > (width - 1) / 2)
+        next_rune(&tail);
+    char part[TEXT_MAX];
+    int head = width - 1 - canvas_width(canvas, tail);
+    text_format(part, sizeof(part), "%.*s…%s", (int)bytes_within(canvas, name, head), name,
+                tail);
+    return canvas_text(canvas, row, column, style, part);
 }
 
 void canvas_restyle(struct canvas *canvas, enum style from, enum style to)

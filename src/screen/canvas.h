@@ -36,6 +36,9 @@ int canvas_width(const struct canvas *canvas, const char *text);
 /* Text in at most width columns; what does not fit gives way to an ellipsis. */
 int canvas_fit(struct canvas *canvas, int row, int column, int width, enum style style,
                const char *text);
+/* The same for names, which often differ at their end: the middle gives way. */
+int canvas_fit_name(struct canvas *canvas, int row, int column, int width, enum style style,
+                    const char *name);
 /* Every cell of a style within the clip takes another. */
 void canvas_restyle(struct canvas *canvas, enum style from, enum style to);
 /* Blank cells from column on take a style, to the end of the row or clip. */
@@ -69,12 +72,12 @@ size_t wrap_length(const struct canvas *canvas, const char *text, int width);
 struct flow {
     struct pen *pen;
     int indent, limit, column, row;
-    bool begun;
+    bool begun, wanted; /* a part stands in the line; the next one goes into a new line */
 };
 /* Starts on a new line of the pen; limit is the column at which that first line ends. */
 struct flow flow_begin(struct pen *pen, int indent, int limit);
 void flow_part(struct flow *flow, const char *label, enum style style, const char *value);
-/* Goes on in a new line; limit as before. */
-void flow_line(struct flow *flow, int limit);
+/* The next part, if there is one, goes into a new line. */
+void flow_line(struct flow *flow);
 
 #endif

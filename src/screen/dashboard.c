@@ -115,7 +115,7 @@ int dashboard_run(struct collector *collector, const struct dashboard_options *o
     int code = terminal_open(&look, &dashboard.terminal, err);
     if (code != 0)
         return code;
-    code = screen_create(terminal_ascii(dashboard.terminal), &dashboard.screen, err);
+    code = screen_create(&dashboard.screen, err);
     if (code == 0 && options->panel != NULL)
         code = screen_panel(dashboard.screen, options->panel, err);
     if (code == 0)
@@ -169,7 +169,7 @@ int dashboard_print(struct collector *collector, const struct dashboard_options 
     struct canvas *canvas = NULL;
     int columns = options->columns > 0 ? options->columns : SCREEN_COLUMNS_MIN;
     int rows = options->rows > 0 ? options->rows : SCREEN_ROWS_MIN;
-    int code = screen_create(options->ascii, &screen, err);
+    int code = screen_create(&screen, err);
     if (code == 0 && options->panel != NULL)
         code = screen_panel(screen, options->panel, err);
     if (code == 0)

@@ -58,12 +58,10 @@ static const double longest_number = 1e7;
 static void format_number(char *dst, size_t size, double shown, int decimals)
 {
     /* A minus before what rounds to nothing says nothing. */
-    if (fabs(shown) < 0.5 * pow(10, -decimals))
+    if (decimals <= 6 && fabs(shown) < 0.5 * pow(10, -decimals))
         shown = 0;
-    if (fabs(shown) >= longest_number)
+    if (fabs(shown) >= longest_number || decimals > 6)
         text_format(dst, size, "%.4g", shown);
-    else if (decimals > 6)
-        text_format(dst, size, "%.3g", shown);
     else
         text_format(dst, size, "%.*f", decimals, shown);
 }
@@ -146,12 +144,12 @@ void format_tag(char *dst, size_t size, const struct view *view, int tag, bool w
 
 void format_age(char *dst, size_t size, const struct view *view, int tag)
 {
-    *dst = '\0';
-    if (!plant_tag_is_point(view->plant, tag) || view->frame->sample[tag].read_utc_ns == 0 ||
-        view_tag(view, tag, NULL).quality != QUALITY_STALE)
-        return;
+    double age_s;
     char span[32];
-    time_format_span(span, sizeof(span), fmax(frame_age_s(view->frame, tag), view->stale_s));
+    *dst = '\0';
+    if (!view_age(view, tag, &age_s) || view_tag(view, tag, NULL).quality != QUALITY_STALE)
+        return;
+    time_format_span(span, sizeof(span), age_s);
     text_format(dst, size, " (%s old)", span);
 }
 
@@ -188,6 +186,14 @@ struct quantity view_as_of_now(const struct view *view, struct quantity q)
     if (view->stale && quantity_usable(q))
         q.quality = QUALITY_STALE;
     return q;
+}
+
+bool view_age(const struct view *view, int tag, double *age_s)
+{
+    if (!plant_tag_is_point(view->plant, tag) || view->frame->sample[tag].read_utc_ns == 0)
+        return false;
+    *age_s = fmax(frame_age_s(view->frame, tag), view->stale ? view->stale_s : 0);
+    return true;
 }
 
 struct quantity view_quantity(const struct view *view, enum derived_id id, int thing)

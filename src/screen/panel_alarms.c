@@ -96,7 +96,7 @@ static void draw_row(const struct view *view, int index, bool chosen, struct pen
     canvas_text(pen->canvas, row, 0, STYLE_STRONG, chosen ? "▸" : " ");
     canvas_format(pen->canvas, row, 1, phase_style(alarm, state), "%d %-12s", alarm->priority,
                   phase_word(state));
-    canvas_fit(pen->canvas, row, NAME, WHAT - NAME - 1, STYLE_NORMAL, alarm->name);
+    canvas_fit_name(pen->canvas, row, NAME, WHAT - NAME - 1, STYLE_NORMAL, alarm->name);
     /* What does not fit beside the name has a line of its own. */
     int room = pen->area.columns - WHAT - 1;
     if (canvas_width(pen->canvas, what) <= room)

@@ -13,7 +13,7 @@
 
 static const double bar_full = 0.23;  /* oxygen fraction at the end of a bar */
 static const double enriched = 0.235; /* 29 CFR 1910.146 (b): enriched above 23.5 % */
-enum { VALUE = 31, BAR = 41, ENTRY = 26 };
+enum { VALUE = 28, BAR = 41, ENTRY = 26 };
 
 /* Index of the lowest action level that oxygen is below, or -1. */
 static int level_passed(const struct hall *hall, double oxygen)
@@ -73,7 +73,7 @@ static void draw_bar(struct canvas *canvas, int row, int width, struct quantity 
         canvas_text(canvas, row, BAR + 2, STYLE_BAD, "no reading to believe");
         return;
     }
-    int full = (int)lround(fmin(1, q.value / bar_full) * width);
+    int full = (int)lround(fmax(0, fmin(1, q.value / bar_full)) * width);
     /* Danger is a ground colour: a bar of it is drawn by its runes alone. */
     for (int i = 0; i < full; i++)
         canvas_text(canvas, row, BAR + 1 + i, style == STYLE_DANGER ? STYLE_STRONG : style,
@@ -84,7 +84,6 @@ static void draw_monitor(const struct view *view, const struct hall *hall, int i
                          struct pen *pen)
 {
     const struct ref *ref = &hall->oxygen.at[index];
-    bool point = ref->kind == REF_TAG && plant_tag_is_point(view->plant, ref->tag);
     const char *reason = "";
     struct quantity q =
         ref->kind == REF_TAG ? view_tag(view, ref->tag, &reason) : view_ref(view, ref);
@@ -97,16 +96,17 @@ static void draw_monitor(const struct view *view, const struct hall *hall, int i
     if (q.quality == QUALITY_STALE || q.quality == QUALITY_UNCERTAIN)
         text_format(mark, sizeof(mark), " %c", quality_mark(q.quality));
     canvas_fit(pen->canvas, row, 3, VALUE - 4, STYLE_NORMAL, name);
-    canvas_format(pen->canvas, row, VALUE, quality_style(q.quality), "%6s %%%s", value, mark);
+    canvas_format(pen->canvas, row, VALUE, quality_style(q.quality), "%9s %%%s", value, mark);
     draw_bar(pen->canvas, row, width, q, style);
     canvas_text(pen->canvas, row, BAR + width + 3, style, word);
     if (quantity_usable(q))
         return;
     char text[200];
     text_copy(text, sizeof(text), reason);
-    if (point && view->frame->sample[ref->tag].read_utc_ns != 0) {
+    double age_s;
+    if (ref->kind == REF_TAG && view_age(view, ref->tag, &age_s)) {
         char span[32];
-        time_format_span(span, sizeof(span), frame_age_s(view->frame, ref->tag));
+        time_format_span(span, sizeof(span), age_s);
         text_format(text + strlen(text), sizeof(text) - strlen(text), "%slast read %s ago",
                     *reason != '\0' ? "; " : "", span);
     }
@@ -201,7 +201,7 @@ static void draw_headline(const struct view *view, const struct hall *hall,
     canvas_fill(pen->canvas, row, 0, style == STYLE_STRONG ? STYLE_NORMAL : style);
     int room = pen->area.columns - canvas_width(pen->canvas, text) -
                canvas_width(pen->canvas, inside) - 9;
-    int at = canvas_fit(pen->canvas, row, 1, room, style, hall->name);
+    int at = canvas_fit_name(pen->canvas, row, 1, room, style, hall->name);
     at = canvas_text(pen->canvas, row, at, style, "   ");
     at = canvas_text(pen->canvas, row, at, style, text);
     at = canvas_text(pen->canvas, row, at, style, "   ");

@@ -62,13 +62,24 @@ static double rounded(double value, double step)
     return step * round(value / step) + 0.0; /* no negative zero */
 }
 
+/* BARE: numbers by magnitude, where the plain ones would not fit into the line. */
+enum { BARE = -1 };
+
+static void term(char *dst, size_t size, double value, int decimals, bool sign)
+{
+    if (decimals == BARE)
+        text_format(dst, size, sign ? "%+.3g" : "%.3g", value);
+    else
+        text_format(dst, size, sign ? "%+.*f" : "%.*f", decimals, value);
+}
+
 /* The sum with some decimals: terms, then the unexplained part. Rounded terms must still add up
  * for the reader: the residue of rounding goes to the largest of in and out, where it is least.
  */
-static void sum_text(const struct ledger *ledger, const struct unit *unit, int decimals,
-                     const char *gap, char *terms, char *rest, size_t size)
+static void sum_text(const struct ledger *ledger, enum quality quality, const struct unit *unit,
+                     int decimals, const char *gap, char *terms, char *rest, size_t size)
 {
-    double step = pow(10, -decimals);
+    double step = decimals == BARE ? 1 : pow(10, -decimals);
     double in = rounded(unit_from_si(unit, ledger->in.value), step);
     double out = rounded(unit_from_si(unit, ledger->out.value), step);
     double stored = rounded(unit_from_si(unit, ledger->stored.value), step);
@@ -79,20 +90,24 @@ static void sum_text(const struct ledger *ledger, const struct unit *unit, int d
         in = rounded(in - residue, step);
     else
         out = rounded(out + residue, step);
-    text_format(terms, size, "in %.*f%s-%sout %.*f%s-%sstored %.*f%s=%s", decimals, in, gap,
-                gap, decimals, out, gap, gap, decimals, stored, gap, gap);
-    /* An uncertainty is never shown as none. */
-    bool hidden = u < 0.5 * step;
-    char mark[3] = "";
-    if (ledger->unexplained.quality != QUALITY_GOOD)
-        text_format(mark, sizeof(mark), " %c", quality_mark(ledger->unexplained.quality));
-    text_format(rest, size, "%+.*f ± %s%.*f %s%s", decimals, left, hidden ? "<" : "", decimals,
-                hidden ? step : u, unit->symbol, mark);
+    char text[5][64], mark[3] = "";
+    bool hidden = u < 0.5 * step; /* an uncertainty is never shown as none */
+    term(text[0], sizeof(text[0]), in, decimals, false);
+    term(text[1], sizeof(text[1]), out, decimals, false);
+    term(text[2], sizeof(text[2]), stored, decimals, false);
+    term(text[3], sizeof(text[3]), left, decimals, true);
+    term(text[4], sizeof(text[4]), hidden ? step : u, decimals, false);
+    if (quality != QUALITY_GOOD)
+        text_format(mark, sizeof(mark), " %c", quality_mark(quality));
+    text_format(terms, size, "in %s%s-%sout %s%s-%sstored %s%s=%s", text[0], gap, gap, text[1],
+                gap, gap, text[2], gap, gap);
+    text_format(rest, size, "%s ± %s%s %s%s", text[3], hidden ? "<" : "", text[4], unit->symbol,
+                mark);
 }
 
 /* Decimals as the uncertainty allows; fewer where the line is too short for them. */
-static void draw_sum(const struct ledger *ledger, bool live, struct canvas *canvas, int row,
-                     int column, int end)
+static void draw_sum(const struct ledger *ledger, enum quality quality, struct canvas *canvas,
+                     int row, int column, int end)
 {
     const struct unit own =
         unit_si(ledger->kind == LEDGER_HEAT ? DIMENSION_POWER : DIMENSION_MASS_FLOW);
@@ -100,17 +115,20 @@ static void draw_sum(const struct ledger *ledger, bool live, struct canvas *canv
                           fmax(fabs(ledger->unexplained.value), 10 * ledger->unexplained.u));
     struct unit unit = shown_unit(&own, largest);
     int decimals = quantity_decimals(unit_span_from_si(&unit, ledger->unexplained.u), 2);
-    char terms[400], rest[200];
+    char terms[400], rest[400];
     const char *gap = "  ";
     for (;;) {
-        sum_text(ledger, &unit, decimals, gap, terms, rest, sizeof(rest));
+        sum_text(ledger, quality, &unit, decimals, gap, terms, rest, sizeof(rest));
         if (column + canvas_width(canvas, terms) + canvas_width(canvas, rest) <= end)
             break;
         if (gap[1] != '\0')
             gap++;
-        else if (decimals-- == 0)
+        else if (decimals-- == BARE) {
+            text_copy(terms, sizeof(terms), "unexplained ");
             break;
+        }
     }
+    bool live = quality != QUALITY_STALE;
     column = canvas_text(canvas, row, column, live ? STYLE_NORMAL : STYLE_STALE, terms);
     canvas_text(canvas, row, column, live ? STYLE_STRONG : STYLE_STALE, rest);
 }
@@ -160,7 +178,7 @@ static void heat_lines(const struct view *view, int index, struct flow *flow)
         format_plain(text, sizeof(text), quantity_good(vessel->heat_budget_w, 0), &watt);
         add(flow, "budget ", text);
     }
-    flow_line(flow, flow->pen->area.columns);
+    flow_line(flow);
     if (vessel->condenser >= 0) {
         double rated_w = view->plant->condenser[vessel->condenser].rated_duty_w;
         char of[48] = "";
@@ -182,7 +200,7 @@ static void mass_lines(const struct view *view, int index, struct flow *flow)
 {
     add_derived(flow, view, DERIVED_VESSEL_LIQUID_MASS, index, "liquid ", true, "");
     add_derived(flow, view, DERIVED_VESSEL_FILL, index, "", false, " full");
-    flow_line(flow, flow->pen->area.columns);
+    flow_line(flow);
     add_derived(flow, view, DERIVED_VESSEL_BOIL_OFF, index, "boil-off ", true, "");
     add_derived(flow, view, DERIVED_VESSEL_BOIL_OFF_DAILY, index, "", false, "");
 }
@@ -199,7 +217,7 @@ static void purity_lines(const struct view *view, int index, struct flow *flow)
         break;
     }
     int purifier = plant->vessel[index].purifier;
-    flow_line(flow, flow->pen->area.columns);
+    flow_line(flow);
     if (purifier < 0) {
         add(flow, "", "no purifier is described");
         return;
@@ -248,7 +266,7 @@ static void air_lines(const struct view *view, int index, struct flow *flow)
 {
     const struct hall *hall = &view->plant->hall[index];
     add_lowest(flow, view, index);
-    flow_line(flow, flow->pen->area.columns);
+    flow_line(flow);
     add_known(flow, view, DERIVED_HALL_SPREAD, index, "spread ", false, "");
     add_bit(flow, view, &hall->fan_running, "fan ", "on", "OFF", true);
     if (hall->ventilation.kind == REF_TAG)
@@ -296,7 +314,7 @@ static int draw_head(const struct view *view, const struct ledger *ledger, bool 
     bool summed = ledger->word != LEDGER_ABSENT && quantity_usable(ledger->unexplained);
     canvas_text(canvas, row, 0, STYLE_STRONG, chosen ? "▸" : " ");
     canvas_text(canvas, row, 1, STYLE_STRONG, ledger_kind_word(ledger->kind));
-    canvas_fit(canvas, row, NAME, left - NAME - 1, STYLE_NORMAL, thing_name(view, ledger));
+    canvas_fit_name(canvas, row, NAME, left - NAME - 1, STYLE_NORMAL, thing_name(view, ledger));
     if (!summed) {
         enum style style = ledger->word == LEDGER_BLIND ? STYLE_CAUTION : STYLE_FAINT;
         if (pen_wrap(pen, left, style,
@@ -313,7 +331,7 @@ static int draw_head(const struct view *view, const struct ledger *ledger, bool 
         canvas_text(canvas, row, column,
                     rest.quality == QUALITY_STALE ? STYLE_STALE : STYLE_STRONG, release);
     } else {
-        draw_sum(ledger, rest.quality != QUALITY_STALE, canvas, row, left,
+        draw_sum(ledger, rest.quality, canvas, row, left,
                  columns >= WIDE ? WIDE_NEEDLE + NEEDLE_COLUMNS : columns);
     }
     return row;

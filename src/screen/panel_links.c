@@ -31,7 +31,7 @@ static void draw_state(const struct link *link, const struct link_state *state, 
     int row = pen_line(pen), columns = pen->area.columns;
     if (state->since_utc_ns != 0)
         format_clock(since, sizeof(since), state->since_utc_ns);
-    canvas_fit(pen->canvas, row, 1, STATE - 2, STYLE_STRONG, link->name);
+    canvas_fit_name(pen->canvas, row, 1, STATE - 2, STYLE_STRONG, link->name);
     int at = canvas_format(
         pen->canvas, row, STATE, state->phase == LINK_UP ? STYLE_NORMAL : STYLE_CAUTION,
         "%s%s%s", link_phase_word(state->phase), since[0] != '\0' ? " since " : "", since);

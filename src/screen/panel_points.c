@@ -43,11 +43,14 @@ static void draw_row(const struct view *view, int tag, int name_columns, bool ch
         return;
     struct quantity q = view_tag(view, tag, &reason);
     format_tag(value, sizeof(value), view, tag, true);
-    if (point && view->frame->sample[tag].read_utc_ns != 0)
-        time_format_span(age, sizeof(age), frame_age_s(view->frame, tag));
+    if (canvas_width(pen->canvas, value) >= VALUE)
+        format_tag(value, sizeof(value), view, tag, false);
+    double age_s;
+    if (view_age(view, tag, &age_s))
+        time_format_span(age, sizeof(age), age_s);
     canvas_text(pen->canvas, row, 0, STYLE_STRONG, chosen ? "▸" : " ");
-    canvas_fit(pen->canvas, row, 1, name_columns, STYLE_NORMAL,
-               plant_tag_name(view->plant, tag));
+    canvas_fit_name(pen->canvas, row, 1, name_columns, STYLE_NORMAL,
+                    plant_tag_name(view->plant, tag));
     int at = name_columns + 3;
     canvas_text(pen->canvas, row, at, quality_style(q.quality), value);
     at += VALUE;

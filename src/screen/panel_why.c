@@ -44,7 +44,7 @@ static void draw_share(const struct view *view, const struct budget_row *entry, 
     const char *name = entry->tag >= 0 ? plant_tag_name(view->plant, entry->tag) : entry->says;
     format_plain(u, sizeof(u), quantity_good(entry->u, 0.05 * entry->u), unit);
     int row = pen_line(pen);
-    canvas_fit(pen->canvas, row, 3, INPUT_U - 4, STYLE_NORMAL, name);
+    canvas_fit_name(pen->canvas, row, 3, INPUT_U - 4, STYLE_NORMAL, name);
     canvas_text(pen->canvas, row, INPUT_U, STYLE_NORMAL, u);
     canvas_format(pen->canvas, row, SHARE, STYLE_NORMAL, "%3.0f %%", share * 100);
     for (int i = 0; i < (int)lround(share * BAR); i++)
@@ -64,8 +64,9 @@ static void draw_input(const struct view *view, int tag, struct pen *pen)
         const struct point *point = &view->plant->point[tag];
         char where[48], age[40] = "never read";
         register_format(where, sizeof(where), &point->read);
-        if (view->frame->sample[tag].read_utc_ns != 0) {
-            time_format_span(age, sizeof(age), frame_age_s(view->frame, tag));
+        double age_s;
+        if (view_age(view, tag, &age_s)) {
+            time_format_span(age, sizeof(age), age_s);
             text_format(age + strlen(age), sizeof(age) - strlen(age), " old");
         }
         text_format(text + strlen(text), sizeof(text) - strlen(text), ", %s; %s %s", age,

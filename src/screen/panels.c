@@ -21,7 +21,7 @@ const struct key_help key_helps[] = {
     {"PgUp PgDn Home End", "a page up or down, to the first, to the last",         NULL    },
     {"Tab",                "the next panel",                                       NULL    },
     {"a",                  "acknowledge the chosen alarm (alarms panel)",          NULL    },
-    {"A",                  "acknowledge all below priority 1 (alarms panel)",      NULL    },
+    {"A",                  "acknowledge all of priority 2 to 4 (alarms panel)",    NULL    },
     {"w",                  "why: where the chosen number comes from; again: back", "w why" },
     {"Escape",             "back to the panel before",                             NULL    },
     {"Ctrl-L",             "draw the whole screen again",                          NULL    },

@@ -74,33 +74,36 @@ void pen_entry(struct pen *pen, int indent, const char *label, enum style style,
 
 struct flow flow_begin(struct pen *pen, int indent, int limit)
 {
-    int row = pen_line(pen);
     return (struct flow){
-        .pen = pen, .indent = indent, .limit = limit, .column = indent, .row = row};
+        .pen = pen, .indent = indent, .limit = limit, .column = indent, .row = pen_line(pen)};
 }
 
-void flow_line(struct flow *flow, int limit)
+void flow_line(struct flow *flow)
+{
+    flow->wanted = flow->begun;
+}
+
+static void next_line(struct flow *flow)
 {
     flow->row = pen_line(flow->pen);
     flow->column = flow->indent;
-    flow->limit = limit;
-    flow->begun = false;
+    flow->limit = flow->pen->area.columns;
+    flow->begun = flow->wanted = false;
 }
 
 void flow_part(struct flow *flow, const char *label, enum style style, const char *value)
 {
     struct canvas *canvas = flow->pen->canvas;
     int width = canvas_width(canvas, label) + canvas_width(canvas, value);
+    int gap = flow->begun ? 2 : 0;
     /* One column is kept for the comma behind it. */
-    if (flow->begun) {
-        int column = canvas_text(canvas, flow->row, flow->column, STYLE_NORMAL, ",");
-        if (column + 1 + width + 1 > flow->limit)
-            flow_line(flow, flow->pen->area.columns);
-        else
-            flow->column = column + 1;
-    } else if (flow->column + width + 1 > flow->limit) {
-        flow_line(flow, flow->pen->area.columns);
-    }
+    bool fits = flow->column + gap + width + 1 <= flow->limit;
+    if (flow->begun && !flow->wanted)
+        canvas_text(canvas, flow->row, flow->column, STYLE_NORMAL, ",");
+    if (flow->wanted || !fits)
+        next_line(flow);
+    else
+        flow->column += gap;
     flow->column = canvas_text(canvas, flow->row, flow->column, STYLE_NORMAL, label);
     flow->column = canvas_text(canvas, flow->row, flow->column, style, value);
     flow->begun = true;

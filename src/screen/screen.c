@@ -13,18 +13,16 @@
 enum { PANEL_MAX = 16 };
 
 struct screen {
-    bool ascii;
     int panel, before;
     struct panel_state state[PANEL_MAX];
     char message[160];
 };
 
-int screen_create(bool ascii, struct screen **out, struct error *err)
+int screen_create(struct screen **out, struct error *err)
 {
     struct screen *screen = calloc(1, sizeof(*screen));
     if (screen == NULL)
         return error_set(err, ERR_MEMORY, "no memory for the screen");
-    screen->ascii = ascii;
     *out = screen;
     return 0;
 }

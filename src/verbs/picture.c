@@ -47,7 +47,7 @@ static int option_panel(struct picture *picture, const char *verb, const char *v
 {
     struct screen *screen = NULL;
     struct error err = {0};
-    int code = screen_create(true, &screen, &err);
+    int code = screen_create(&screen, &err);
     if (code == 0)
         code = screen_panel(screen, value, &err);
     screen_free(screen);
