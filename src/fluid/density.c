@@ -15,6 +15,7 @@
 
 enum { STEPS_MAX = 100 };
 static const double STEP_TOLERANCE = 4 * DBL_EPSILON;
+static const double GROWTH_MAX = 1.2;
 
 static double pressure_at(const struct isotherm *isotherm, double density, double *slope)
 {
@@ -38,6 +39,10 @@ static int solve_branch(const struct isotherm *isotherm, double pressure, double
             return ERR_RANGE;
         double step = -miss / slope;
         double next = density + step;
+        /* Pressed hard near the critical temperature the tangent is flat and points far beyond
+         * any liquid, where the equation means nothing. */
+        if (next > GROWTH_MAX * density)
+            next = GROWTH_MAX * density;
         /* Far from the root a step may leave the branch on the far side: halve the way there.
          */
         if (next >= high)
