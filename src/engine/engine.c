@@ -117,6 +117,7 @@ static int create_memory(struct engine *engine)
     engine->hall = arena_take(arena, (size_t)plant->hall_count + 1, sizeof(*engine->hall));
     engine->hall_safety =
         arena_take(arena, (size_t)plant->hall_count + 1, sizeof(*engine->hall_safety));
+    engine->finding = arena_take(arena, LEDGER_MAX, sizeof(*engine->finding));
     engine->alarm_input =
         arena_take(arena, (size_t)plant->alarm_count + 1, sizeof(*engine->alarm_input));
     engine->weights.slope = arena_take(arena, blocks, sizeof(double));
@@ -124,7 +125,7 @@ static int create_memory(struct engine *engine)
     engine->balance = arena_take(arena, blocks, sizeof(double));
     if (engine->scatter == NULL || engine->vessel == NULL || engine->duty == NULL ||
         engine->duty_verdict == NULL || engine->coolant_line == NULL || engine->hall == NULL ||
-        engine->hall_safety == NULL || engine->alarm_input == NULL ||
+        engine->hall_safety == NULL || engine->alarm_input == NULL || engine->finding == NULL ||
         engine->weights.slope == NULL || engine->weights.rate == NULL ||
         engine->balance == NULL || frame_init(&engine->frame, plant, arena) != 0 ||
         trend_create(engine) != 0)
@@ -357,6 +358,7 @@ const struct results *engine_step(struct engine *engine, const struct frame *fra
     for (int i = 0; i < plant->hall_count; i++)
         hall_step(engine, i, elapsed_s);
     things_step(engine);
+    findings_step(engine);
     obey(engine, command, command_count);
     for (int i = 0; i < plant->alarm_count; i++)
         engine->alarm_input[i].quantity = watched(engine, &plant->alarm[i]);

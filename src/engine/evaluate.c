@@ -193,14 +193,12 @@ static void add_pumps(const struct work *work, struct estimate *in)
 static void add_cooling(const struct work *work, double factor, struct estimate *out)
 {
     const struct vessel_state *state = work->state;
-    if (!state->cooling_unmetered)
-        return;
     struct estimate cooling;
-    double mean = rate_of(work, SERIES_COOLING);
     estimate_exact(&cooling, 0);
-    estimate_add(&cooling, 1, &work->engine->duty[state->vessel->condenser]);
-    if (cooling.value != 0)
-        estimate_scale(&cooling, mean / cooling.value);
+    for (int i = 0; i < state->cooling_count; i++)
+        estimate_add(&cooling, 1, &work->engine->duty[state->cooling[i]]);
+    if (cooling.value != 0) /* the errors are of the duty now, the value of the window */
+        estimate_scale(&cooling, rate_of(work, SERIES_COOLING) / cooling.value);
     estimate_add(out, factor, &cooling);
 }
 
@@ -287,7 +285,7 @@ static void balance_vapour(const struct work *work, const struct window_line *li
     const struct contents *c = &state->contents;
     double latent = c->vapour.enthalpy_j_kg - c->line.liquid.enthalpy_j_kg;
     add_cooling(work, 1 / latent, boil);
-    if (state->cooling_unmetered) /* what returns is a little colder than saturated */
+    if (state->cooling_count > 0) /* what returns is a little colder than saturated */
         estimate_add_term(boil, source_of(SOURCE_CONDENSER, state->index),
                           0.02 * rate_of(work, SERIES_COOLING) / latent);
 }

@@ -136,7 +136,9 @@ struct vessel_state {
     int pump[PLANT_LIST_MAX];
     struct input pump_power[PLANT_LIST_MAX]; /* after the running bit */
     double pump_w;
-    bool cooling_unmetered, vapour_leaves;
+    int cooling_count; /* condensers that no stream joins to the vessel: known by their duty */
+    int cooling[PLANT_LIST_MAX];
+    bool vapour_leaves;
     /* window */
     struct window window;
     double *values; /* one per series, of this frame */
@@ -192,6 +194,17 @@ struct hall_state {
 int hall_create(struct engine *engine, int index);
 void hall_step(struct engine *engine, int index, double elapsed_s);
 
+/* ---- findings.c
+ * ------------------------------------------------------------------------------- */
+
+/* A ledger that stays beyond its uncertainty becomes a finding, told in the journal with every
+ * explanation that fits. */
+struct finding {
+    bool open;
+    int64_t since_utc_ns; /* of the present leaning to open or close; 0: none */
+};
+void findings_step(struct engine *engine);
+
 /* ---- condenser.c, things.c
  * --------------------------------------------------------------------------------- */
 
@@ -235,6 +248,7 @@ struct engine {
     struct fluid_saturation *coolant_line; /* two per condenser: in, out; near the pressure */
     struct hall_state *hall;
     struct hall_safety *hall_safety;
+    struct finding *finding; /* per ledger */
     struct alarm_set *alarms;
     struct alarm_input *alarm_input;
     struct window_weights weights;

@@ -141,7 +141,7 @@ void vessel_publish(struct engine *engine, struct vessel_state *state)
     publish_heat(engine, state, &heat);
     publish_mass(engine, state, &mass);
     /* Vapour condensed inside is known by the duty only. */
-    publish_boil_off(engine, state, state->cooling_unmetered ? &heat_loss : &loss);
+    publish_boil_off(engine, state, state->cooling_count > 0 ? &heat_loss : &loss);
     engine_derive(engine, DERIVED_VESSEL_PRESSURE_RATE, state->index, &state->pressure_rate,
                   &rate);
 }

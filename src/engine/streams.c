@@ -34,10 +34,16 @@ static bool answered(const struct plant *plant, int vessel, struct thing_ref oth
     return false;
 }
 
+/* Does any stream join the vessel and a condenser? */
+static bool fed(const struct plant *plant, int vessel, int condenser)
+{
+    struct thing_ref other = {.kind = THING_CONDENSER, .index = condenser};
+    return answered(plant, vessel, other, true) || answered(plant, vessel, other, false);
+}
+
 int streams_create(struct engine *engine, struct vessel_state *state)
 {
     const struct plant *plant = engine->plant;
-    bool fed = false;
     state->stream =
         arena_take(engine->arena, (size_t)plant->stream_count + 1, sizeof(*state->stream));
     if (state->stream == NULL)
@@ -52,14 +58,15 @@ int streams_create(struct engine *engine, struct vessel_state *state)
         bool condenser = other.kind == THING_CONDENSER &&
                          plant->condenser[other.index].vessel == state->index;
         bool loop = condenser && !answered(plant, state->index, other, from);
-        fed = fed || condenser;
         if ((from && stream->phase == STREAM_VAPOUR) || loop)
             state->vapour_leaves = true;
         state->stream[state->stream_count++] =
             (struct vessel_stream){.stream = i, .sign = from ? 1 : -1, .loop = loop};
     }
-    state->cooling_unmetered = state->vessel->condenser >= 0 && !fed;
-    state->vapour_leaves = state->vapour_leaves || state->cooling_unmetered;
+    for (int i = 0; i < plant->condenser_count && state->cooling_count < PLANT_LIST_MAX; i++)
+        if (plant->condenser[i].vessel == state->index && !fed(plant, state->index, i))
+            state->cooling[state->cooling_count++] = i;
+    state->vapour_leaves = state->vapour_leaves || state->cooling_count > 0;
     return 0;
 }
 

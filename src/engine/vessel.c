@@ -98,6 +98,14 @@ static void read_liquid_temperature(struct engine *engine, struct vessel_state *
     }
     if (state->thermometers_used == 0)
         state->thermometers_used = usable;
+    bool lost = (usable & state->thermometers_used) != state->thermometers_used;
+    if (lost && usable != 0 && state->offset_weight < OFFSET_LEAST) {
+        /* Too early to know its offset: begin with the others. */
+        state->thermometers_used = usable;
+        state->offset_weight = 0;
+        memset(state->offset_k, 0, sizeof(state->offset_k));
+        window_restart(&state->window);
+    }
     bool shifted = (usable & state->thermometers_used) != state->thermometers_used &&
                    state->offset_weight >= OFFSET_LEAST;
     double sum = 0;

@@ -47,9 +47,10 @@ static void push_streams(const struct engine *engine, struct vessel_state *state
     v[SERIES_PUMP] = state->pump_w;
     v[SERIES_NET_HEAT] -= state->pump_w;
     v[SERIES_COOLING] = 0;
-    if (state->cooling_unmetered) {
+    if (state->cooling_count > 0) {
         const struct contents *c = &state->contents;
-        v[SERIES_COOLING] = engine->duty[state->vessel->condenser].value;
+        for (int i = 0; i < state->cooling_count; i++)
+            v[SERIES_COOLING] += engine->duty[state->cooling[i]].value;
         v[SERIES_NET_HEAT] += v[SERIES_COOLING];
         v[SERIES_NET_VAPOUR] +=
             v[SERIES_COOLING] / (c->vapour.enthalpy_j_kg - c->line.liquid.enthalpy_j_kg);
@@ -75,8 +76,8 @@ bool vessel_window_push(struct engine *engine, struct vessel_state *state)
     int64_t least_ns = time_s_to_ns(state->vessel->window_minimum_s);
     if (state->window.count > 0 && engine->utc_ns - state->pushed_utc_ns > least_ns)
         window_restart(&state->window);
-    if (state->cooling_unmetered)
-        verdict_join(&state->heat_verdict, &engine->duty_verdict[state->vessel->condenser]);
+    for (int i = 0; i < state->cooling_count; i++)
+        verdict_join(&state->heat_verdict, &engine->duty_verdict[state->cooling[i]]);
     if (!verdict_usable(&state->contents_verdict) || !verdict_usable(&state->flows_verdict) ||
         (state->vapour_temperature.described && state->contents_input.vapour_saturated)) {
         state->lost = state->contents_verdict;
