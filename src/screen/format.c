@@ -144,12 +144,11 @@ void format_tag(char *dst, size_t size, const struct view *view, int tag, bool w
 
 void format_age(char *dst, size_t size, const struct view *view, int tag)
 {
-    double age_s;
     char span[32];
     *dst = '\0';
-    if (!view_age(view, tag, &age_s) || view_tag(view, tag, NULL).quality != QUALITY_STALE)
+    if (!view_age(view, tag, span, sizeof(span)) ||
+        view_tag(view, tag, NULL).quality != QUALITY_STALE)
         return;
-    time_format_span(span, sizeof(span), age_s);
     text_format(dst, size, " (%s old)", span);
 }
 
@@ -188,11 +187,16 @@ struct quantity view_as_of_now(const struct view *view, struct quantity q)
     return q;
 }
 
-bool view_age(const struct view *view, int tag, double *age_s)
+bool view_age(const struct view *view, int tag, char *dst, size_t size)
 {
+    *dst = '\0';
     if (!plant_tag_is_point(view->plant, tag) || view->frame->sample[tag].read_utc_ns == 0)
         return false;
-    *age_s = fmax(frame_age_s(view->frame, tag), view->stale ? view->stale_s : 0);
+    double age_s = fmax(frame_age_s(view->frame, tag), view->stale ? view->stale_s : 0);
+    if (age_s < 1)
+        text_copy(dst, size, "0 s");
+    else
+        time_format_span(dst, size, floor(age_s));
     return true;
 }
 

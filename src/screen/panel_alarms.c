@@ -176,8 +176,11 @@ static enum screen_request key_pressed(const struct view *view, struct panel_sta
     }
     if (key == 'A')
         return acknowledge_all(view, command, message, message_size);
-    if (state->id < 0 || state->id >= count(view))
+    if (state->id < 0 || state->id >= count(view)) {
+        text_copy(message, message_size,
+                  "no alarm was shown as chosen yet; look, then press a");
         return SCREEN_REDRAW;
+    }
     const char *name = view->plant->alarm[state->id].name;
     if (!waits(view, state->id)) {
         text_format(message, message_size, "%s: nothing to acknowledge", name);

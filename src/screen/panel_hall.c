@@ -103,10 +103,8 @@ static void draw_monitor(const struct view *view, const struct hall *hall, int i
         return;
     char text[200];
     text_copy(text, sizeof(text), reason);
-    double age_s;
-    if (ref->kind == REF_TAG && view_age(view, ref->tag, &age_s)) {
-        char span[32];
-        time_format_span(span, sizeof(span), age_s);
+    char span[32];
+    if (ref->kind == REF_TAG && view_age(view, ref->tag, span, sizeof(span))) {
         text_format(text + strlen(text), sizeof(text) - strlen(text), "%slast read %s ago",
                     *reason != '\0' ? "; " : "", span);
     }

@@ -45,9 +45,7 @@ static void draw_row(const struct view *view, int tag, int name_columns, bool ch
     format_tag(value, sizeof(value), view, tag, true);
     if (canvas_width(pen->canvas, value) >= VALUE)
         format_tag(value, sizeof(value), view, tag, false);
-    double age_s;
-    if (view_age(view, tag, &age_s))
-        time_format_span(age, sizeof(age), age_s);
+    view_age(view, tag, age, sizeof(age));
     canvas_text(pen->canvas, row, 0, STYLE_STRONG, chosen ? "▸" : " ");
     canvas_fit_name(pen->canvas, row, 1, name_columns, STYLE_NORMAL,
                     plant_tag_name(view->plant, tag));

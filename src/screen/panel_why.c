@@ -11,7 +11,8 @@
 
 #include "panel.h"
 
-enum { INPUT_U = 30, SHARE = 44, SHARE_BAR = 52, BAR = 24 };
+enum { SHARE = 13, SHARE_BAR = 20, BAR = 24 }; /* from the column of u on */
+static const double least_share = 0.005;
 
 static void draw_point(const struct view *view, int tag, struct pen *pen)
 {
@@ -36,19 +37,36 @@ static void draw_point(const struct view *view, int tag, struct pen *pen)
     pen_entry(pen, 18, "described in", STYLE_NORMAL, text);
 }
 
-static void draw_share(const struct view *view, const struct budget_row *entry, double total,
-                       const struct unit *unit, struct pen *pen)
+/* Contributions in one unit, so that they can be compared at a glance. */
+static void draw_share(const char *name, double u, double total, const struct unit *unit,
+                       int u_column, struct pen *pen)
 {
-    double share = total > 0 ? entry->u * entry->u / total : 0;
-    char u[60];
-    const char *name = entry->tag >= 0 ? plant_tag_name(view->plant, entry->tag) : entry->says;
-    format_plain(u, sizeof(u), quantity_good(entry->u, 0.05 * entry->u), unit);
-    int row = pen_line(pen);
-    canvas_fit_name(pen->canvas, row, 3, INPUT_U - 4, STYLE_NORMAL, name);
-    canvas_text(pen->canvas, row, INPUT_U, STYLE_NORMAL, u);
-    canvas_format(pen->canvas, row, SHARE, STYLE_NORMAL, "%3.0f %%", share * 100);
-    for (int i = 0; i < (int)lround(share * BAR); i++)
-        canvas_text(pen->canvas, row, SHARE_BAR + i, STYLE_FAINT, "█");
+    double share = total > 0 ? u * u / total : 0;
+    int row = pen_line(pen), bar = u_column + SHARE_BAR;
+    int room = pen->area.columns - bar - 1;
+    canvas_fit_name(pen->canvas, row, 3, u_column - 4, STYLE_NORMAL, name);
+    canvas_format(pen->canvas, row, u_column, STYLE_NORMAL, "%.2g %s",
+                  unit_span_from_si(unit, u),
+                  strcmp(unit->symbol, "1") != 0 ? unit->symbol : "");
+    canvas_format(pen->canvas, row, u_column + SHARE, STYLE_NORMAL, "%3.0f %%", share * 100);
+    for (int i = 0; i < (int)lround(share * (room < BAR ? room : BAR)); i++)
+        canvas_text(pen->canvas, row, bar + i, STYLE_FAINT, "█");
+}
+
+static const char *row_name(const struct view *view, const struct budget_row *row)
+{
+    return row->tag >= 0 ? plant_tag_name(view->plant, row->tag) : row->says;
+}
+
+/* Column of u, behind the longest name where there is room for it. */
+static int u_column(const struct view *view, const struct budget *budget, struct pen *pen)
+{
+    int longest = 20, most = pen->area.columns >= 100 ? 46 : 36;
+    for (int i = 0; i < budget->count; i++) {
+        int width = canvas_width(pen->canvas, row_name(view, &budget->row[i]));
+        longest = width > longest ? width : longest;
+    }
+    return 4 + (longest < most ? longest : most);
 }
 
 /* Value, quality, age and register of an input. */
@@ -62,14 +80,11 @@ static void draw_input(const struct view *view, int tag, struct pen *pen)
                 *reason != '\0' ? ": " : "", reason);
     if (plant_tag_is_point(view->plant, tag)) {
         const struct point *point = &view->plant->point[tag];
-        char where[48], age[40] = "never read";
+        char where[48], age[40];
+        bool read = view_age(view, tag, age, sizeof(age));
         register_format(where, sizeof(where), &point->read);
-        double age_s;
-        if (view_age(view, tag, &age_s)) {
-            time_format_span(age, sizeof(age), age_s);
-            text_format(age + strlen(age), sizeof(age) - strlen(age), " old");
-        }
-        text_format(text + strlen(text), sizeof(text) - strlen(text), ", %s; %s %s", age,
+        text_format(text + strlen(text), sizeof(text) - strlen(text), ", %s%s; %s %s",
+                    read ? age : "never read", read ? " old" : "",
                     view->plant->link[point->link].name, where);
     }
     pen_entry(pen, 18, plant_tag_name(view->plant, tag), quality_style(q.quality), text);
@@ -87,12 +102,25 @@ static void draw_budget(const struct view *view, int tag, struct pen *pen)
         pen_wrap(pen, 3, STYLE_FAINT, "No uncertainty budget: it is not computed now.");
         return;
     }
-    int row = pen_line(pen);
+    int row = pen_line(pen), column = u_column(view, &budget, pen), others = 0;
+    struct unit unit = shown_unit(plant_tag_shown(view->plant, tag), 10 * sqrt(total));
+    double rest = 0;
     canvas_text(pen->canvas, row, 3, STYLE_FAINT, "uncertainty from");
-    canvas_text(pen->canvas, row, INPUT_U, STYLE_FAINT, "u");
-    canvas_text(pen->canvas, row, SHARE, STYLE_FAINT, "share of u squared");
-    for (int i = 0; i < budget.count; i++)
-        draw_share(view, &budget.row[i], total, plant_tag_shown(view->plant, tag), pen);
+    canvas_text(pen->canvas, row, column, STYLE_FAINT, "u");
+    canvas_text(pen->canvas, row, column + SHARE, STYLE_FAINT, "share of u squared");
+    for (int i = 0; i < budget.count; i++) {
+        double u = budget.row[i].u;
+        if (u * u >= least_share * total) {
+            draw_share(row_name(view, &budget.row[i]), u, total, &unit, column, pen);
+            continue;
+        }
+        rest += u * u;
+        others++;
+    }
+    char text[48];
+    text_format(text, sizeof(text), "%d smaller together", others);
+    if (others > 0)
+        draw_share(text, sqrt(rest), total, &unit, column, pen);
     pen_line(pen);
     canvas_text(pen->canvas, pen_line(pen), 3, STYLE_FAINT, "inputs now");
     for (int i = 0; i < budget.count; i++)

@@ -10,7 +10,7 @@
 #include <math.h>
 
 #include "../../src/screen/canvas.h"
-#include "../../src/screen/format.h"
+#include "../../src/screen/panel.h"
 
 struct picture {
     struct fixture *fixture;
@@ -274,6 +274,29 @@ static void test_the_needle_stands_where_its_own_uncertainty_puts_it(void **unus
     picture_close(&picture);
 }
 
+static void test_a_trend_spans_its_own_range_and_leaves_gaps_blank(void **unused)
+{
+    (void)unused;
+    const struct trend_column column[] = {
+        {1.0, 1.0, true },
+        {0,   0,   false},
+        {4.4, 4.6, true },
+        {8.0, 8.0, true }
+    };
+    struct canvas *canvas = NULL;
+    double low, high;
+    assert_int_equal(canvas_create(10, 1, false, &canvas, NULL), 0);
+    assert_true(trend_draw(column, 4, canvas, 0, 2, &low, &high));
+    static const uint32_t runes[] = {' ', ' ', 0x2581, ' ', 0x2584, 0x2588, ' '};
+    for (size_t i = 0; i < ARRAY_LENGTH(runes); i++)
+        assert_int_equal(canvas_cell(canvas, 0, (int)i)->rune, runes[i]);
+    assert_true(low == 1.0 && high == 8.0);
+    canvas_clear(canvas);
+    assert_false(trend_draw(column + 1, 1, canvas, 0, 2, &low, &high));
+    assert_int_equal(canvas_cell(canvas, 0, 2)->rune, ' ');
+    canvas_free(canvas);
+}
+
 /* ---- alarms
  * ------------------------------------------------------------------------------------- */
 
@@ -317,6 +340,19 @@ static void test_the_highest_priority_is_never_acknowledged_in_bulk(void **unuse
     expect(&picture, "1 acknowledged; priority 1 only one by one, with a");
     press(&picture, 'x', &command);
     expect_not(&picture, "acknowledged;");
+    picture_close(&picture);
+}
+
+static void test_a_key_typed_ahead_of_the_picture_acknowledges_nothing(void **unused)
+{
+    (void)unused;
+    struct picture picture = picture_open(fixture_hall_danger, "ledgers");
+    struct command command = {0};
+    screen_key(picture.screen, &picture.fixture->view, '5', &command);
+    assert_int_equal(press(&picture, 'a', &command), SCREEN_REDRAW);
+    expect(&picture, "no alarm was shown as chosen yet");
+    assert_int_equal(press(&picture, 'a', &command), SCREEN_COMMAND);
+    assert_string_equal(picture.fixture->plant->alarm[command.alarm].name, "hall-oxygen-low");
     picture_close(&picture);
 }
 
@@ -478,8 +514,10 @@ int main(void)
         cmocka_unit_test(test_no_digit_is_shown_that_the_uncertainty_makes_meaningless),
         cmocka_unit_test(test_the_terms_of_a_ledger_add_up_as_they_are_shown),
         cmocka_unit_test(test_the_needle_stands_where_its_own_uncertainty_puts_it),
+        cmocka_unit_test(test_a_trend_spans_its_own_range_and_leaves_gaps_blank),
         cmocka_unit_test(test_an_acknowledgement_is_for_the_alarm_that_was_shown_as_chosen),
         cmocka_unit_test(test_the_highest_priority_is_never_acknowledged_in_bulk),
+        cmocka_unit_test(test_a_key_typed_ahead_of_the_picture_acknowledges_nothing),
         cmocka_unit_test(test_where_nothing_waits_no_command_is_made),
         cmocka_unit_test(test_the_advisory_line_stands_on_every_panel_in_every_situation),
         cmocka_unit_test(test_a_terminal_too_small_says_so_and_still_tells_the_danger),
