@@ -29,9 +29,9 @@ void format_clock(char *dst, size_t size, int64_t utc_ns);
 
 /* A quantity that was good when it was read is stale when the source has stopped. */
 struct quantity view_as_of_now(const struct view *view, struct quantity q);
-/* How old a reading is now, in whole seconds; false for what is no reading, or was never read.
- */
-bool view_age(const struct view *view, int tag, double *age_s);
+/* How old a reading is now: "41 s"; false, and nothing, for what is no reading or was never
+ * read. */
+bool view_age(const struct view *view, int tag, char *dst, size_t size);
 /* A derived quantity of a thing; of quality missing where the plant has none. */
 struct quantity view_quantity(const struct view *view, enum derived_id id, int thing);
 /* A tag, SI, in its own basis (points as read); reason may be NULL. */
