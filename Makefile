@@ -19,7 +19,7 @@ BUILD   ?= build
 CFLAGS  ?= -O2 -g
 INSTALL ?= install
 
-PKGS       := ncursesw libmodbus inih
+PKGS       := ncursesw libmodbus inih sqlite3
 PKG_CFLAGS := $(shell pkg-config --cflags $(PKGS) 2>/dev/null)
 PKG_LIBS   := $(shell pkg-config --libs $(PKGS) 2>/dev/null)
 TEST_LIBS   = $(shell pkg-config --libs cmocka)

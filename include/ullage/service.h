@@ -41,6 +41,7 @@ struct view {
     int links_up;
     int journal_count; /* newest last */
     const struct journal_entry *journal;
+    uint64_t journal_total; /* entries since the start, also those that are no longer here */
 };
 
 /* ---- collector ------------------------------------------------------------------------------

@@ -50,6 +50,7 @@ enum { JOURNAL_ROOM = 2 * VIEW_JOURNAL_MAX };
 static void journal_keep(struct collector *collector, const struct journal_entry *entry)
 {
     struct view *view = &collector->view;
+    view->journal_total++;
     const struct journal_entry *end = collector->journal + JOURNAL_ROOM;
     if (view->journal + view->journal_count == end) {
         int kept = VIEW_JOURNAL_MAX - 1;

@@ -23,7 +23,8 @@ enum exit_status {
 
 /* A verb: argv[0] is its own name. Returns an enum exit_status. */
 typedef int verb_run(int argc, char **argv);
-verb_run verb_check, verb_demo, verb_fluid, verb_inspect, verb_simulate, verb_watch;
+verb_run verb_check, verb_collect, verb_demo, verb_export, verb_fluid, verb_inspect,
+    verb_simulate, verb_watch;
 
 struct verb {
     const char *name;

@@ -78,7 +78,8 @@ def headers(root):
     """Each header compiles alone."""
     complaints = []
     compiler = shlex.split(os.environ.get("CC") or "cc")
-    flags = subprocess.run(["pkg-config", "--cflags", "ncursesw", "libmodbus", "inih"],
+    flags = subprocess.run(["pkg-config", "--cflags", "ncursesw", "libmodbus", "inih",
+                            "sqlite3"],
                            stdout=subprocess.PIPE, text=True, check=True).stdout.split()
     for path in c_files(root, "src", "include"):
         if not path.endswith(".h"):
