@@ -15,7 +15,8 @@
 enum { FLUID_TERM_MAX = 64, FLUID_ANCILLARY_MAX = 8 };
 
 /* n delta^d tau^t, with exp(-delta^l) where l > 0, or with
- * exp(-eta (delta - epsilon)^2 - beta (tau - gamma)^2) where gauss. */
+ * exp(-eta (delta - epsilon)^2 - beta (tau - gamma)^2) where gauss. A table is in order of l,
+ * then d, Gaussian terms last: so terms of the same l and d are summed once per isotherm. */
 struct residual_term {
     double n, t;
     int d, l;
@@ -86,23 +87,40 @@ struct fluid {
     const struct transport *transport; /* NULL: no model */
 };
 
-/* The part of an equation that depends on temperature alone, computed once per isotherm: for
- * each term c = n tau^t ..., tau dc/dtau and tau^2 d2c/dtau2. */
+/* The part of an equation that depends on temperature alone, computed once per isotherm. A
+ * slot gathers the terms of one delta^d exp(-delta^l): c = sum n tau^t, tau dc/dtau,
+ * tau^2 d2c/dtau2; slots up to .end belong to a group of one l. A Gaussian term keeps n tau^t,
+ * its exponent's part in tau, and the factors of its tau derivatives. */
+struct slot {
+    int power;
+    double d, c, t, tt;
+};
+struct group {
+    int l, end;
+};
+struct gauss {
+    const struct residual_term *term;
+    double exponent, c, t, tt;
+};
 struct isotherm {
     const struct fluid *fluid;
-    double temperature_k, tau;
-    double c[FLUID_TERM_MAX];
+    double temperature_k, tau, ln_tau;
+    int group_count, gauss_count;
+    struct group group[FLUID_TERM_MAX];
+    struct slot slot[FLUID_TERM_MAX];
+    struct gauss gauss[FLUID_TERM_MAX];
 };
 void isotherm_set(struct isotherm *isotherm, const struct fluid *fluid, double temperature_k);
 
-/* Residual part and its density derivatives at one density: a, delta a_d, delta^2 a_dd. */
+/* Residual part and its density derivatives at one density: a, delta a_d, delta^2 a_dd,
+ * delta^3 a_ddd. */
 struct residual_density {
-    double a, d, dd;
+    double a, d, dd, ddd;
 };
 void residual_density(const struct isotherm *isotherm, double delta,
                       struct residual_density *out);
 
-/* The rest: tau a_t, tau^2 a_tt, delta tau a_dt. */
+/* The rest: tau a_t, tau^2 a_tt, delta tau a_dt (density.ddd is not computed). */
 struct residual_whole {
     struct residual_density density;
     double t, tt, dt;

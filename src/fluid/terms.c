@@ -2,139 +2,247 @@
 /* Copyright the ullage authors */
 
 /*
- * The terms of every equation of state, written once. On an isotherm the factors that depend on
- * temperature are computed once (logarithm taken once), so that a density solver pays for
- * powers of delta only. Derivatives come with the function, in the reduced form delta d/d delta
- * and tau d/d tau, where each is the term times a small polynomial.
+ * The terms of every equation of state, written once. On an isotherm all terms of the same
+ * delta^d exp(-delta^l) are one coefficient, with its temperature derivatives beside it, so
+ * that a density costs one power per such slot and one exponential per l. Sums are taken of the
+ * operator delta d/d delta, applied up to three times, and of tau d/d tau: each is the term
+ * times a small polynomial.
  */
 #include "equation.h"
 
 #include <math.h>
 
-enum { POWER_MAX = 16, EXPONENT_MAX = 8 };
+enum { POWER_MAX = 16, WHOLE_MAX = 25, EIGHTHS = 8 };
+
+/* exp of less than this is nothing beside 1, whatever polynomial of a term stands before it
+ * (exp(-80) is 2e-35; the largest such factor is below 1e17). */
+static const double NEGLIGIBLE = -80;
+
+/* Powers of tau: published exponents are mostly eighths, and for these no exponential is
+ * needed. */
+struct tau_powers {
+    double ln_tau, whole[WHOLE_MAX], eighth[EIGHTHS];
+};
+
+static void tau_powers_set(struct tau_powers *powers, double tau)
+{
+    powers->ln_tau = log(tau);
+    powers->whole[0] = 1;
+    powers->whole[1] = tau;
+    for (int i = 2; i < WHOLE_MAX; i++)
+        powers->whole[i] = powers->whole[i / 2] * powers->whole[i - i / 2];
+    double half = sqrt(tau), quarter = sqrt(half), eighth = sqrt(quarter);
+    powers->eighth[0] = 1;
+    powers->eighth[1] = eighth;
+    powers->eighth[2] = quarter;
+    powers->eighth[3] = quarter * eighth;
+    powers->eighth[4] = half;
+    powers->eighth[5] = half * eighth;
+    powers->eighth[6] = half * quarter;
+    powers->eighth[7] = half * quarter * eighth;
+}
+
+static double tau_power(const struct tau_powers *powers, double t)
+{
+    double eighths = t * EIGHTHS;
+    int k = (int)eighths;
+    if (k >= 0 && k < WHOLE_MAX * EIGHTHS && (double)k == eighths)
+        return powers->whole[k / EIGHTHS] * powers->eighth[k % EIGHTHS];
+    return exp(t * powers->ln_tau);
+}
+
+static void add_gauss(struct isotherm *isotherm, const struct residual_term *term, double value)
+{
+    double tau = isotherm->tau, away = tau - term->gamma;
+    double exponent = -term->beta * away * away;
+    if (exponent < NEGLIGIBLE)
+        return;
+    double m1 = term->t - 2 * term->beta * tau * away;
+    isotherm->gauss[isotherm->gauss_count++] = (struct gauss){
+        .term = term,
+        .exponent = exponent,
+        .c = value,
+        .t = m1,
+        .tt = m1 * m1 - term->t - 2 * term->beta * tau * tau,
+    };
+}
 
 void isotherm_set(struct isotherm *isotherm, const struct fluid *fluid, double temperature_k)
 {
-    double tau = fluid->reduce_temperature_k / temperature_k, ln_tau = log(tau);
+    double tau = fluid->reduce_temperature_k / temperature_k;
+    struct tau_powers powers;
+    tau_powers_set(&powers, tau);
     isotherm->fluid = fluid;
     isotherm->temperature_k = temperature_k;
     isotherm->tau = tau;
-    for (int i = 0; i < fluid->term_count; i++) {
+    isotherm->ln_tau = powers.ln_tau;
+    isotherm->gauss_count = 0;
+    int slots = 0, groups = 0, i = 0;
+    while (i < fluid->term_count) {
         const struct residual_term *term = &fluid->term[i];
-        double exponent = term->t * ln_tau;
-        if (term->gauss)
-            exponent -= term->beta * (tau - term->gamma) * (tau - term->gamma);
-        isotherm->c[i] = term->n * exp(exponent);
+        if (term->gauss) {
+            add_gauss(isotherm, term, term->n * tau_power(&powers, term->t));
+            i++;
+            continue;
+        }
+        int d = term->d, l = term->l;
+        double c = 0, ct = 0, ctt = 0;
+        for (; i < fluid->term_count; i++, term++) {
+            if (term->d != d || term->l != l || term->gauss)
+                break;
+            double value = term->n * tau_power(&powers, term->t);
+            c += value;
+            ct += value * term->t;
+            ctt += value * term->t * (term->t - 1);
+        }
+        if (groups == 0 || isotherm->group[groups - 1].l != l)
+            isotherm->group[groups++].l = l;
+        isotherm->slot[slots++] = (struct slot){.power = d, .d = d, .c = c, .t = ct, .tt = ctt};
+        isotherm->group[groups - 1].end = slots;
     }
+    isotherm->group_count = groups;
 }
 
-/* Powers of delta, and exp(-delta^l) for each l; shared by all terms at one density. */
-struct powers {
-    double of[POWER_MAX + 1];
-    double decay[EXPONENT_MAX + 1];
-};
-
-static void powers_set(struct powers *powers, const struct fluid *fluid, double delta)
+static void powers_set(double power[POWER_MAX], double delta)
 {
-    bool used[EXPONENT_MAX + 1] = {false};
-    powers->of[0] = 1;
-    for (int i = 1; i <= POWER_MAX; i++)
-        powers->of[i] = powers->of[i - 1] * delta;
-    for (int i = 0; i < fluid->term_count; i++)
-        used[fluid->term[i].l] = true;
-    powers->decay[0] = 1;
-    for (int l = 1; l <= EXPONENT_MAX; l++)
-        powers->decay[l] = used[l] ? exp(-powers->of[l]) : 0;
-}
-
-/* A term's density factor f (without c), and delta f'/f and delta^2 f''/f. */
-struct factor {
-    double f, k1, k2;
-};
-
-static struct factor density_factor(const struct residual_term *term,
-                                    const struct powers *powers, double delta)
-{
-    struct factor out;
-    double d = term->d;
-    if (term->gauss) {
-        double away = delta - term->epsilon;
-        out.f = powers->of[term->d] * exp(-term->eta * away * away);
-        out.k1 = d - 2 * term->eta * delta * away;
-        out.k2 = out.k1 * out.k1 - d - 2 * term->eta * delta * delta;
-    } else {
-        double l = term->l, power = term->l > 0 ? powers->of[term->l] : 0;
-        out.f = powers->of[term->d] * powers->decay[term->l];
-        out.k1 = d - l * power;
-        out.k2 = out.k1 * (out.k1 - 1) - l * l * power;
-    }
-    return out;
+    power[0] = 1;
+    power[1] = delta;
+    for (int i = 2; i < POWER_MAX; i++)
+        power[i] = power[i / 2] * power[i - i / 2];
 }
 
 void residual_density(const struct isotherm *isotherm, double delta,
                       struct residual_density *out)
 {
-    const struct fluid *fluid = isotherm->fluid;
-    struct powers powers;
-    powers_set(&powers, fluid, delta);
-    double a = 0, ad = 0, add = 0;
-    for (int i = 0; i < fluid->term_count; i++) {
-        struct factor factor = density_factor(&fluid->term[i], &powers, delta);
-        double value = isotherm->c[i] * factor.f;
-        a += value;
-        ad += value * factor.k1;
-        add += value * factor.k2;
+    double power[POWER_MAX], a = 0, d1 = 0, d2 = 0, d3 = 0;
+    powers_set(power, delta);
+    const struct slot *slot = isotherm->slot;
+    for (int g = 0; g < isotherm->group_count; g++) {
+        int l = isotherm->group[g].l;
+        const struct slot *end = isotherm->slot + isotherm->group[g].end;
+        double s0 = 0, s1 = 0, s2 = 0, s3 = 0;
+        for (; slot < end; slot++) {
+            double v0 = slot->c * power[slot->power], v1 = v0 * slot->d, v2 = v1 * slot->d;
+            s0 += v0;
+            s1 += v1;
+            s2 += v2;
+            s3 += v2 * slot->d;
+        }
+        if (l > 0) {
+            double f = exp(-power[l]), q = l * power[l], lq = l * q;
+            double k1 = s1 - q * s0;
+            double k2 = s2 + q * (q * s0 - 2 * s1);
+            double k3 = s3 + q * (3 * (q * s1 - s2) - q * q * s0);
+            s3 = f * (k3 - lq * (3 * k1 + l * s0));
+            s2 = f * (k2 - lq * s0);
+            s1 = f * k1;
+            s0 *= f;
+        }
+        a += s0;
+        d1 += s1;
+        d2 += s2;
+        d3 += s3;
     }
-    *out = (struct residual_density){.a = a, .d = ad, .dd = add};
+    for (int i = 0; i < isotherm->gauss_count; i++) {
+        const struct gauss *gauss = &isotherm->gauss[i];
+        const struct residual_term *term = gauss->term;
+        double away = delta - term->epsilon;
+        double exponent = gauss->exponent - term->eta * away * away;
+        if (exponent < NEGLIGIBLE)
+            continue;
+        double v = gauss->c * power[term->d] * exp(exponent), twice = 2 * term->eta * delta;
+        double k1 = term->d - twice * away;
+        double m = -twice * (delta + away), dm = -twice * (3 * delta + away);
+        a += v;
+        d1 += v * k1;
+        d2 += v * (k1 * k1 + m);
+        d3 += v * (k1 * (k1 * k1 + 3 * m) + dm);
+    }
+    *out =
+        (struct residual_density){.a = a, .d = d1, .dd = d2 - d1, .ddd = d3 - 3 * d2 + 2 * d1};
 }
 
 void residual_whole(const struct isotherm *isotherm, double delta, struct residual_whole *out)
 {
-    const struct fluid *fluid = isotherm->fluid;
-    double tau = isotherm->tau;
-    struct powers powers;
-    powers_set(&powers, fluid, delta);
-    struct residual_whole sum = {0};
-    for (int i = 0; i < fluid->term_count; i++) {
-        const struct residual_term *term = &fluid->term[i];
-        struct factor factor = density_factor(term, &powers, delta);
-        double value = isotherm->c[i] * factor.f;
-        double m1 = term->t, m2 = term->t * (term->t - 1);
-        if (term->gauss) {
-            m1 -= 2 * term->beta * tau * (tau - term->gamma);
-            m2 = m1 * m1 - term->t - 2 * term->beta * tau * tau;
+    double power[POWER_MAX], a = 0, d1 = 0, d2 = 0, t = 0, tt = 0, dt = 0;
+    powers_set(power, delta);
+    const struct slot *slot = isotherm->slot;
+    for (int g = 0; g < isotherm->group_count; g++) {
+        int l = isotherm->group[g].l;
+        const struct slot *end = isotherm->slot + isotherm->group[g].end;
+        double s0 = 0, s1 = 0, s2 = 0, st = 0, stt = 0, sdt = 0;
+        for (; slot < end; slot++) {
+            double p = power[slot->power], v0 = slot->c * p, v1 = v0 * slot->d,
+                   vt = slot->t * p;
+            s0 += v0;
+            s1 += v1;
+            s2 += v1 * slot->d;
+            st += vt;
+            sdt += vt * slot->d;
+            stt += slot->tt * p;
         }
-        sum.density.a += value;
-        sum.density.d += value * factor.k1;
-        sum.density.dd += value * factor.k2;
-        sum.t += value * m1;
-        sum.tt += value * m2;
-        sum.dt += value * factor.k1 * m1;
+        if (l > 0) {
+            double f = exp(-power[l]), q = l * power[l];
+            s2 = f * (s2 + q * ((q - l) * s0 - 2 * s1));
+            s1 = f * (s1 - q * s0);
+            sdt = f * (sdt - q * st);
+            s0 *= f;
+            st *= f;
+            stt *= f;
+        }
+        a += s0;
+        d1 += s1;
+        d2 += s2;
+        t += st;
+        tt += stt;
+        dt += sdt;
     }
-    *out = sum;
+    for (int i = 0; i < isotherm->gauss_count; i++) {
+        const struct gauss *gauss = &isotherm->gauss[i];
+        const struct residual_term *term = gauss->term;
+        double away = delta - term->epsilon;
+        double exponent = gauss->exponent - term->eta * away * away;
+        if (exponent < NEGLIGIBLE)
+            continue;
+        double v = gauss->c * power[term->d] * exp(exponent), twice = 2 * term->eta * delta;
+        double k1 = term->d - twice * away;
+        a += v;
+        d1 += v * k1;
+        d2 += v * (k1 * k1 - twice * (delta + away));
+        t += v * gauss->t;
+        tt += v * gauss->tt;
+        dt += v * k1 * gauss->t;
+    }
+    *out = (struct residual_whole){
+        .density = {.a = a, .d = d1, .dd = d2 - d1},
+        .t = t,
+        .tt = tt,
+        .dt = dt,
+    };
 }
 
 /* Ideal part without ln delta: a, tau a_t, tau^2 a_tt. */
-static void ideal(const struct fluid *fluid, double tau, double *a, double *t, double *tt)
+static void ideal(const struct isotherm *isotherm, double *a, double *t, double *tt)
 {
-    *a = fluid->lead_a1 + fluid->lead_a2 * tau + fluid->log_tau * log(tau);
+    const struct fluid *fluid = isotherm->fluid;
+    double tau = isotherm->tau, ln_tau = isotherm->ln_tau;
+    *a = fluid->lead_a1 + fluid->lead_a2 * tau + fluid->log_tau * ln_tau;
     *t = fluid->lead_a2 * tau + fluid->log_tau;
     *tt = -fluid->log_tau;
     for (int i = 0; i < fluid->ideal_power_count; i++) {
         double exponent = fluid->ideal_power[i].t;
-        double value = fluid->ideal_power[i].n * pow(tau, exponent);
+        double value = fluid->ideal_power[i].n * exp(exponent * ln_tau);
         *a += value;
         *t += value * exponent;
         *tt += value * exponent * (exponent - 1);
     }
     for (int i = 0; i < fluid->planck_count; i++) {
         double n = fluid->planck[i].n, x = fluid->planck[i].theta * tau;
-        double grown =
-            expm1(x); /* e^x - 1; infinite at low temperature, where all of it is 0 */
-        *a += n * log1p(-exp(-x));
-        *t += n * x / grown;
-        /* -n x^2 e^x / (e^x - 1)^2, written so that it does not overflow */
-        *tt -= n * x * x / (grown * (1 - exp(-x)));
+        double decay = exp(-x); /* 0 at low temperature, where all of it is 0 */
+        double rest = -expm1(-x);
+        *a += n * log1p(-decay);
+        *t += n * x * decay / rest;
+        *tt -= n * x * x * decay / (rest * rest);
     }
 }
 
@@ -152,7 +260,7 @@ void state_fill(const struct isotherm *isotherm, double density_mol_m3, struct f
     struct residual_whole residual;
     double a0, a0_t, a0_tt;
     residual_whole(isotherm, delta, &residual);
-    ideal(fluid, isotherm->tau, &a0, &a0_t, &a0_tt);
+    ideal(isotherm, &a0, &a0_t, &a0_tt);
     a0 += log(delta);
     double z = 1 + residual.density.d;
     double energy_t = a0_t + residual.t;
