@@ -289,6 +289,8 @@ static void derive_saturation(struct engine *engine, struct vessel_state *state)
             verdict_doubt(&liquid, QUALITY_UNCERTAIN, "%.80s; mean of the other %d", one.reason,
                           usable);
     }
+    if (verdict_usable(&state->contents_verdict) && state->contents_input.level_m <= 0)
+        verdict_doubt(&liquid, QUALITY_MISSING, "no liquid");
     if (verdict_usable(&liquid)) {
         subcooling = saturation;
         subcooling.value -= state->contents_input.liquid_temperature_k;
@@ -299,6 +301,28 @@ static void derive_saturation(struct engine *engine, struct vessel_state *state)
                           -state->u_liquid_mean_k);
     }
     engine_derive(engine, DERIVED_VESSEL_SUBCOOLING, state->index, &subcooling, &liquid);
+}
+
+static void compute_contents(struct vessel_state *state)
+{
+    const struct vessel *vessel = state->vessel;
+    struct contents_input *input = &state->contents_input;
+    struct error err;
+    if (!verdict_usable(&state->contents_verdict))
+        return;
+    int code = contents_at(vessel->fluid, &vessel->shape, input, &state->contents, &err);
+    double u_level = state->level.parts > 0 ? state->level.part[0].u : 0;
+    if (code != 0 && input->level_m < 3 * u_level) {
+        /* A warm vessel whose gauge reads nothing but its own error: empty. */
+        input->level_m = 0;
+        code = contents_at(vessel->fluid, &vessel->shape, input, &state->contents, &err);
+    }
+    if (code != 0)
+        verdict_doubt(&state->contents_verdict, QUALITY_BAD, "%.110s", err.text);
+    else if (state->contents.vapour_doubtful)
+        verdict_doubt(&state->contents_verdict, QUALITY_UNCERTAIN,
+                      "vapour at %.1f K cannot be vapour; taken as saturated",
+                      state->vapour_temperature.value);
 }
 
 void vessel_step(struct engine *engine, struct vessel_state *state)
@@ -312,15 +336,7 @@ void vessel_step(struct engine *engine, struct vessel_state *state)
     read_level(engine, state);
     read_liquid_temperature(engine, state);
     read_vapour_temperature(engine, state);
-    struct error err;
-    if (verdict_usable(&state->contents_verdict) &&
-        contents_at(state->vessel->fluid, &state->vessel->shape, &state->contents_input,
-                    &state->contents, &err) != 0)
-        verdict_doubt(&state->contents_verdict, QUALITY_BAD, "%.110s", err.text);
-    if (verdict_usable(&state->contents_verdict) && state->contents.vapour_doubtful)
-        verdict_doubt(&state->contents_verdict, QUALITY_UNCERTAIN,
-                      "vapour at %.1f K cannot be vapour; taken as saturated",
-                      state->vapour_temperature.value);
+    compute_contents(state);
     derive_inventory(engine, state);
     derive_saturation(engine, state);
     streams_read(engine, state);

@@ -348,6 +348,31 @@ static void test_the_same_frames_give_bit_equal_results(void **state)
     rig_close(&b);
 }
 
+static void test_a_warm_empty_vessel_has_vapour_and_no_subcooling(void **state)
+{
+    (void)state;
+    struct rig rig;
+    struct body body;
+    rig_open(&rig, "tests/data/engine/tank.ini");
+    rig_quiet(&rig);
+    body_fill(&body, 1000, 800, 112000);
+    for (int i = 0; i < 100; i++) {
+        rig_tank(&rig, &body);
+        rig_set(&rig, "LT-1", i % 2 == 0 ? 0.001 : -0.001); /* u of the gauge is 1 mm */
+        static const char *const thermometers[] = {"TT-1", "TT-2", "TT-3", "TT-4", "TT-5"};
+        for (int k = 0; k < 5; k++)
+            rig_set(&rig, thermometers[k], 290);
+        rig_step(&rig, 10);
+    }
+    assert_near(rig_value(&rig, "tank.liquid_mass"), 0, 1e-9);
+    /* Ideal gas within 0.1 %: argon, 112 kPa, 290 K. */
+    assert_close(rig_value(&rig, "tank.vapour_mass"),
+                 112000 * 0.039948 / (8.314462618 * 290) * 1000, 2e-3);
+    assert_int_equal(rig_derived(&rig, "tank.subcooling")->quantity.quality, QUALITY_MISSING);
+    assert_string_equal(rig_derived(&rig, "tank.boil_off_daily")->reason, "no liquid");
+    rig_close(&rig);
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -362,6 +387,7 @@ int main(void)
         cmocka_unit_test(test_an_alarm_sees_its_quantity_in_the_basis_of_its_limit),
         cmocka_unit_test(test_pressures_become_absolute_with_the_frames_own_barometer),
         cmocka_unit_test(test_trends_keep_lows_and_highs_of_good_values),
+        cmocka_unit_test(test_a_warm_empty_vessel_has_vapour_and_no_subcooling),
         cmocka_unit_test(test_the_same_frames_give_bit_equal_results),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
