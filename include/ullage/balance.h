@@ -33,6 +33,7 @@
     X(VAPOUR_NOISE, "scatter of the vapour balance")                                           \
     X(PRESSURE_NOISE, "scatter of the pressure")                                               \
     X(HALL_NOISE, "scatter of the monitors")                                                   \
+    X(PURITY_NOISE, "scatter of the analyzer")                                                 \
     X(LIQUID_TEMPERATURE, "liquid: mean of the places measured")                               \
     X(LIQUID_SATURATED, "liquid taken as saturated")                                           \
     X(VAPOUR_TEMPERATURE, "vapour: mean of the space above")                                   \
@@ -254,6 +255,13 @@ void hall_release(enum hall_ventilation ventilation, double volume_m3, double fa
 /* Lifetime of free electrons for a mole fraction of oxygen: 3.0e-13 s / x (methods 1.1). */
 double purity_lifetime_s(double oxygen_fraction);
 enum { PURITY_LIFETIME_U_PERCENT = 25, PURITY_VELOCITY_U_PERCENT = 3 };
+/* Well-mixed tank (methods 2.1): time constant M/(eps F), steady fraction of a source in mol/s,
+ * time from one fraction to another. ERR_RANGE where it is never reached. */
+double purity_time_constant_s(double liquid_kg, double flow_kg_s, double efficiency);
+double purity_steady_fraction(double source_mol_s, double flow_kg_s, double efficiency,
+                              double molar_mass_kg_mol);
+int purity_time_to_s(double fraction, double steady, double wanted, double time_constant_s,
+                     double *time_s) MUST_CHECK;
 /* Drift velocity in liquid argon by the global mobility fit (methods 1.4). */
 double purity_velocity_m_s(double field_v_m, double temperature_k);
 

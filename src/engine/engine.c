@@ -109,6 +109,8 @@ static int create_memory(struct engine *engine)
         arena_take(arena, (size_t)plant->point_count + 1, sizeof(*engine->scatter));
     engine->vessel =
         arena_take(arena, (size_t)plant->vessel_count + 1, sizeof(*engine->vessel));
+    engine->purity =
+        arena_take(arena, (size_t)plant->vessel_count + 1, sizeof(*engine->purity));
     engine->duty = arena_take(arena, (size_t)plant->condenser_count + 1, sizeof(*engine->duty));
     engine->duty_verdict =
         arena_take(arena, (size_t)plant->condenser_count + 1, sizeof(*engine->duty_verdict));
@@ -123,15 +125,15 @@ static int create_memory(struct engine *engine)
     engine->weights.slope = arena_take(arena, blocks, sizeof(double));
     engine->weights.rate = arena_take(arena, blocks, sizeof(double));
     engine->balance = arena_take(arena, blocks, sizeof(double));
-    if (engine->scatter == NULL || engine->vessel == NULL || engine->duty == NULL ||
-        engine->duty_verdict == NULL || engine->coolant_line == NULL || engine->hall == NULL ||
-        engine->hall_safety == NULL || engine->alarm_input == NULL || engine->finding == NULL ||
-        engine->weights.slope == NULL || engine->weights.rate == NULL ||
-        engine->balance == NULL || frame_init(&engine->frame, plant, arena) != 0 ||
-        trend_create(engine) != 0)
+    if (engine->scatter == NULL || engine->vessel == NULL || engine->purity == NULL ||
+        engine->duty == NULL || engine->duty_verdict == NULL || engine->coolant_line == NULL ||
+        engine->hall == NULL || engine->hall_safety == NULL || engine->alarm_input == NULL ||
+        engine->finding == NULL || engine->weights.slope == NULL ||
+        engine->weights.rate == NULL || engine->balance == NULL ||
+        frame_init(&engine->frame, plant, arena) != 0 || trend_create(engine) != 0)
         return ERR_MEMORY;
     for (int i = 0; i < plant->vessel_count; i++)
-        if (vessel_create(engine, i) != 0)
+        if (vessel_create(engine, i) != 0 || purity_create(engine, i) != 0)
             return ERR_MEMORY;
     for (int i = 0; i < plant->hall_count; i++)
         if (hall_create(engine, i) != 0)
@@ -267,6 +269,8 @@ static void restart_windows(struct engine *engine)
 {
     for (int i = 0; i < engine->plant->vessel_count; i++)
         window_restart(&engine->vessel[i].window);
+    for (int i = 0; i < engine->plant->vessel_count; i++)
+        window_restart(&engine->purity[i].window);
     for (int i = 0; i < engine->plant->hall_count; i++)
         window_restart(&engine->hall[i].window);
 }
@@ -355,6 +359,8 @@ const struct results *engine_step(struct engine *engine, const struct frame *fra
         condenser_step(engine, i);
     for (int i = 0; i < plant->vessel_count; i++)
         vessel_step(engine, &engine->vessel[i]);
+    for (int i = 0; i < plant->vessel_count; i++)
+        purity_step(engine, i);
     for (int i = 0; i < plant->hall_count; i++)
         hall_step(engine, i, elapsed_s);
     things_step(engine);

@@ -172,6 +172,19 @@ enum ledger_word ledger_word_of(const struct verdict *verdict, bool filling,
 /* "filling: 7 min to go" */
 void verdict_filling(struct verdict *verdict, double to_go_s);
 
+/* ---- purity.c
+ * --------------------------------------------------------------------------------- */
+
+/* Oxygen in the liquid of a vessel with a purifier. */
+struct purity_state {
+    struct window window;    /* mole fraction, and what the purifier takes */
+    struct estimate ingress; /* of the last evaluation */
+    struct verdict verdict;
+    int64_t pushed_utc_ns;
+};
+int purity_create(struct engine *engine, int vessel);
+void purity_step(struct engine *engine, int vessel);
+
 /* ---- halls
  * ------------------------------------------------------------------------------------ */
 
@@ -243,7 +256,8 @@ struct engine {
     struct estimate *estimate;            /* one per derived quantity */
     int *derived_index[DERIVED_ID_COUNT]; /* per thing; -1: has none */
     struct vessel_state *vessel;
-    struct estimate *duty; /* per condenser */
+    struct purity_state *purity; /* per vessel */
+    struct estimate *duty;       /* per condenser */
     struct verdict *duty_verdict;
     struct fluid_saturation *coolant_line; /* two per condenser: in, out; near the pressure */
     struct hall_state *hall;

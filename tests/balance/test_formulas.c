@@ -275,6 +275,27 @@ static void test_lifetime_and_drift_velocity(void **state)
                  2 * 0.01 * PURITY_VELOCITY_U_PERCENT);
 }
 
+static void test_cleaning_of_a_well_mixed_tank(void **state)
+{
+    (void)state;
+    struct check_value tau = check_value("purif.tau.1"), steady = check_value("purif.c_ss.1");
+    struct check_value time = check_value("purif.t_to.1");
+    double seconds;
+    check_result(&tau,
+                 purity_time_constant_s(check_input(&tau, "M_kg"), check_input(&tau, "F_kg_s"),
+                                        check_input(&tau, "eps")));
+    check_result(&steady, purity_steady_fraction(check_input(&steady, "S_mol_s"),
+                                                 check_input(&steady, "F_kg_s"),
+                                                 check_input(&steady, "eps"), 0.039948));
+    assert_int_equal(
+        purity_time_to_s(check_input(&time, "x0_mol"), check_input(&time, "xss_mol"),
+                         check_input(&time, "x_mol"), check_input(&time, "tau_s"), &seconds),
+        0);
+    check_result(&time, seconds);
+    /* Never below what enters. */
+    assert_int_equal(purity_time_to_s(1e-9, 5e-10, 4e-10, 1000, &seconds), ERR_RANGE);
+}
+
 static void test_suction_head(void **state)
 {
     (void)state;
@@ -355,6 +376,7 @@ int main(void)
         cmocka_unit_test(test_oxygen_of_a_mixed_room_in_three_cases),
         cmocka_unit_test(test_release_is_found_again_from_the_oxygen_it_leaves),
         cmocka_unit_test(test_lifetime_and_drift_velocity),
+        cmocka_unit_test(test_cleaning_of_a_well_mixed_tank),
         cmocka_unit_test(test_suction_head),
         cmocka_unit_test(test_gas_column_friction_and_least_work),
         cmocka_unit_test(test_conformity_of_a_delivery),
