@@ -303,6 +303,25 @@ static void draw_trend(const struct view *view, int tag, struct pen *pen, int ro
     canvas_fit(pen->canvas, row + 1, column, width, STYLE_FAINT, text);
 }
 
+/* The open finding of a ledger, if any: the newest entry about it that did not close it. */
+static void draw_finding(const struct view *view, const struct ledger *ledger, struct pen *pen)
+{
+    char subject[128], clock[40], text[400];
+    text_format(subject, sizeof(subject), "%s %s", ledger_kind_word(ledger->kind),
+                thing_name(view, ledger));
+    for (int i = view->journal_count - 1; i >= 0; i--) {
+        const struct journal_entry *entry = &view->journal[i];
+        if (entry->kind != JOURNAL_FINDING || strcmp(entry->subject, subject) != 0)
+            continue;
+        if (strcmp(entry->state, "closed") == 0)
+            return;
+        format_clock(clock, sizeof(clock), entry->utc_ns);
+        text_format(text, sizeof(text), "since %s: %s", clock, entry->text);
+        pen_wrap(pen, NAME, STYLE_CAUTION, text);
+        return;
+    }
+}
+
 /* The sum, or why there is none. */
 static int draw_head(const struct view *view, const struct ledger *ledger, bool chosen,
                      int left, struct pen *pen)
@@ -364,6 +383,7 @@ static void draw_ledger(const struct view *view, const struct ledger *ledger, bo
     }
     if (known && ledger->unexplained.quality == QUALITY_UNCERTAIN && ledger->reason[0] != '\0')
         pen_wrap(pen, NAME, STYLE_CAUTION, ledger->reason);
+    draw_finding(view, ledger, pen);
 }
 
 static void draw(const struct view *view, const struct panel_state *state, struct pen *pen)

@@ -361,6 +361,28 @@ static inline void fixture_oxygen_unknown(struct fixture *fixture)
         "otherwise.");
 }
 
+static inline void fixture_finding(struct fixture *fixture)
+{
+    fixture_quiet(fixture);
+    fixture_set(fixture, "store.heat_load", 6480, 130);
+    fixture_sum(fixture, LEDGER_HEAT, 0, 6640, 7800, 120, 130);
+    fixture->view.journal_count = 2;
+    fixture->journal[0] = (struct journal_entry){
+        .utc_ns = fixture->frame.utc_ns - 4680 * NS_PER_S,
+        .kind = JOURNAL_FINDING,
+        .subject = "HEAT store",
+        .state = "opened",
+        .text =
+            "heat load 1280 W more than budget (u 130 W): worse insulation, lost vacuum, or "
+            "a meter lies: FT-110, FT-112"};
+    fixture->journal[1] =
+        (struct journal_entry){.utc_ns = fixture->frame.utc_ns - 600 * NS_PER_S,
+                               .kind = JOURNAL_FINDING,
+                               .subject = "MASS store",
+                               .state = "closed",
+                               .text = "within its uncertainty again"};
+}
+
 static inline void fixture_filling(struct fixture *fixture)
 {
     fixture_quiet(fixture);
@@ -386,6 +408,7 @@ static const struct situation situations[] = {
     {"lost-link",      fixture_lost_link     },
     {"stale-source",   fixture_stale_source  },
     {"oxygen-unknown", fixture_oxygen_unknown},
+    {"finding",        fixture_finding       },
     {"filling",        fixture_filling       },
 };
 

@@ -297,6 +297,21 @@ static void test_a_trend_spans_its_own_range_and_leaves_gaps_blank(void **unused
     canvas_free(canvas);
 }
 
+static void
+test_an_open_finding_stands_under_its_ledger_and_a_closed_one_does_not(void **unused)
+{
+    (void)unused;
+    struct picture picture = picture_open(fixture_finding, "ledgers");
+    expect(&picture, "since 2026-11-30 22:41:07Z: heat load 1280 W more than budget");
+    expect_not(&picture, "within its uncertainty again");
+    picture.fixture->journal[1] = picture.fixture->journal[0];
+    text_copy(picture.fixture->journal[1].state, sizeof(picture.fixture->journal[1].state),
+              "closed");
+    draw(&picture);
+    expect_not(&picture, "heat load 1280 W more than budget");
+    picture_close(&picture);
+}
+
 /* ---- alarms
  * ------------------------------------------------------------------------------------- */
 
@@ -515,6 +530,8 @@ int main(void)
         cmocka_unit_test(test_the_terms_of_a_ledger_add_up_as_they_are_shown),
         cmocka_unit_test(test_the_needle_stands_where_its_own_uncertainty_puts_it),
         cmocka_unit_test(test_a_trend_spans_its_own_range_and_leaves_gaps_blank),
+        cmocka_unit_test(
+            test_an_open_finding_stands_under_its_ledger_and_a_closed_one_does_not),
         cmocka_unit_test(test_an_acknowledgement_is_for_the_alarm_that_was_shown_as_chosen),
         cmocka_unit_test(test_the_highest_priority_is_never_acknowledged_in_bulk),
         cmocka_unit_test(test_a_key_typed_ahead_of_the_picture_acknowledges_nothing),
