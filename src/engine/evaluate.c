@@ -327,9 +327,10 @@ static bool choose_range(struct work *work, enum track track, struct window_line
     struct engine *engine = work->engine;
     const struct window *window = &state->window;
     struct balance_result *balance = &state->balance[track];
-    double least = state->vessel->window_minimum_s;
+    double least = vessel_least_s(state);
     double block = time_ns_to_s(window->block_ns);
-    int from = window_from(window, state->vessel->window_s, state->start_s[track]);
+    int from =
+        window_from(window, fmax(state->vessel->window_s, 8 * block), state->start_s[track]);
     const double *t = window_time_s(window);
     double span = window->count > 0 ? t[window->count - 1] - t[from] : 0;
     balance->span_s = span;
@@ -364,7 +365,7 @@ static bool choose_range(struct work *work, enum track track, struct window_line
 static void evaluate_pressure_rate(struct engine *engine, struct vessel_state *state)
 {
     const struct window *window = &state->window;
-    double least = state->vessel->window_minimum_s;
+    double least = vessel_least_s(state);
     int from = window_from(window, least, 0);
     const double *t = window_time_s(window);
     struct window_line line;

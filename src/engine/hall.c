@@ -10,8 +10,16 @@
 
 #include <math.h>
 
-static const double WINDOW_S = 300, WINDOW_LEAST_S = 60, EPISODE_END_S = 3600;
+/* With frames so slow that this is less than a few of them, eight and four blocks. */
+static const double WINDOW_S = 300, WINDOW_LEAST_S = 60;
+static const double EPISODE_END_S = 3600;
 static const double GAS_CONSTANT = 8.314462618;
+
+static double window_s(const struct window *window, double wanted_s, double blocks)
+{
+    double least = blocks * time_ns_to_s(window->block_ns);
+    return wanted_s > least ? wanted_s : least;
+}
 
 int hall_create(struct engine *engine, int index)
 {
@@ -194,12 +202,13 @@ static void evaluate_release(struct engine *engine, int index, const struct moni
 {
     const struct hall *hall = &engine->plant->hall[index];
     const struct window *window = &engine->hall[index].window;
-    int from = window_from(window, WINDOW_S, 0), to = window->count;
+    int from = window_from(window, window_s(window, WINDOW_S, 8), 0), to = window->count;
+    double least = window_s(window, WINDOW_LEAST_S, 4);
     const double *t = window_time_s(window);
     out->span_s = to > 0 ? t[to - 1] - t[from] : 0;
-    if (out->span_s < WINDOW_LEAST_S || window_weigh(window, from, &engine->weights) != 0) {
+    if (out->span_s < least || window_weigh(window, from, &engine->weights) != 0) {
         out->filling = true;
-        verdict_filling(&out->verdict, WINDOW_LEAST_S - out->span_s);
+        verdict_filling(&out->verdict, least - out->span_s);
         return;
     }
     const double *mean = window_series(window, HALL_SERIES_MEAN);
@@ -332,8 +341,8 @@ void hall_step(struct engine *engine, int index, double elapsed_s)
     struct input fan = read_fan(engine, hall, &release.verdict);
     release.density_kg_m3 = gas_density(engine, hall, &release.verdict);
     if (verdict_usable(&release.verdict)) {
-        if (state->window.count > 0 &&
-            time_ns_to_s(engine->utc_ns - state->pushed_utc_ns) > WINDOW_LEAST_S)
+        if (state->window.count > 0 && time_ns_to_s(engine->utc_ns - state->pushed_utc_ns) >
+                                           window_s(&state->window, WINDOW_LEAST_S, 4))
             window_restart(&state->window);
         const double values[HALL_SERIES_COUNT] = {
             [HALL_SERIES_MEAN] = monitors.mean,

@@ -160,6 +160,8 @@ void vessel_step(struct engine *engine, struct vessel_state *state);
 /* streams.c */
 int streams_create(struct engine *engine, struct vessel_state *state);
 void streams_read(struct engine *engine, struct vessel_state *state);
+/* Shortest span worth a balance: window_minimum, and four blocks. */
+double vessel_least_s(const struct vessel_state *state);
 /* window.c: this frame into the window; true when the window is worth a new evaluation. */
 bool vessel_window_push(struct engine *engine, struct vessel_state *state);
 /* evaluate.c: the window's balances. */

@@ -91,9 +91,12 @@ static void evaluate_ingress(struct engine *engine, int vessel, const struct pas
 {
     const struct vessel *described = &engine->plant->vessel[vessel];
     const struct window *window = &engine->purity[vessel].window;
-    int from = window_from(window, described->window_s, 0), to = window->count;
+    int from = window_from(window,
+                           fmax(described->window_s, 8 * time_ns_to_s(window->block_ns)), 0),
+        to = window->count;
     const double *t = window_time_s(window), *x = window_series(window, PURITY_FRACTION);
-    double span = to > 0 ? t[to - 1] - t[from] : 0, least = described->window_minimum_s;
+    double span = to > 0 ? t[to - 1] - t[from] : 0,
+           least = vessel_least_s(&engine->vessel[vessel]);
     struct window_line line;
     if (span + time_ns_to_s(window->block_ns) < least ||
         window_weigh(window, from, &engine->weights) != 0 ||
@@ -159,8 +162,8 @@ void purity_step(struct engine *engine, int vessel)
     derive_time_constant(engine, vessel, &pass, &constant);
     verdict = pass.verdict;
     if (verdict_usable(&verdict)) {
-        if (state->window.count > 0 &&
-            time_ns_to_s(engine->utc_ns - state->pushed_utc_ns) > described->window_minimum_s)
+        if (state->window.count > 0 && time_ns_to_s(engine->utc_ns - state->pushed_utc_ns) >
+                                           vessel_least_s(&engine->vessel[vessel]))
             window_restart(&state->window);
         const double values[] = {
             [PURITY_FRACTION] = pass.in.value, [PURITY_TAKEN] = pass.taken.value};

@@ -71,9 +71,16 @@ static double lost_s(struct vessel_state *state, int64_t utc_ns)
     return usual ? 0 : span;
 }
 
+double vessel_least_s(const struct vessel_state *state)
+{
+    double blocks = 4 * time_ns_to_s(state->window.block_ns);
+    double least = state->vessel->window_minimum_s;
+    return least > blocks ? least : blocks;
+}
+
 bool vessel_window_push(struct engine *engine, struct vessel_state *state)
 {
-    int64_t least_ns = time_s_to_ns(state->vessel->window_minimum_s);
+    int64_t least_ns = time_s_to_ns(vessel_least_s(state));
     if (state->window.count > 0 && engine->utc_ns - state->pushed_utc_ns > least_ns)
         window_restart(&state->window);
     for (int i = 0; i < state->cooling_count; i++)

@@ -135,6 +135,29 @@ static void test_windows_fill_and_say_how_long(void **state)
     rig_close(&rig);
 }
 
+static void test_frames_slower_than_the_shortest_window_still_fill_it(void **state)
+{
+    (void)state;
+    /* A frame each quarter of an hour, where ten minutes would be enough and a hall takes five.
+     */
+    struct rig rig;
+    struct body body;
+    rig_open(&rig, "tests/data/engine/slow.ini");
+    body_fill(&body, 1000, 800, 112000);
+    for (int i = 0; i < 30; i++) {
+        rig_set(&rig, "PT-1", 112000);
+        rig_set(&rig, "LT-1", 8);
+        rig_set(&rig, "TT-1", body.line.temperature_k);
+        rig_set(&rig, "AT-1", 0.2095);
+        rig_step(&rig, 900);
+    }
+    assert_near(rig_value(&rig, "tank.heat_load"), 0, 1e-3);
+    assert_near(rig_value(&rig, "tank.mass_unexplained"), 0, 1e-9);
+    assert_near(rig_value(&rig, "tank.pressure_rate"), 0, 1e-9);
+    assert_near(rig_value(&rig, "room.release"), 0, 1e-9);
+    rig_close(&rig);
+}
+
 static void test_a_pause_longer_than_the_shortest_window_starts_it_anew(void **state)
 {
     (void)state;
@@ -379,6 +402,7 @@ int main(void)
         cmocka_unit_test(test_no_lost_reading_leaves_a_quantity_good_that_rests_on_it),
         cmocka_unit_test(test_a_lost_input_blinds_the_ledgers_that_need_it),
         cmocka_unit_test(test_windows_fill_and_say_how_long),
+        cmocka_unit_test(test_frames_slower_than_the_shortest_window_still_fill_it),
         cmocka_unit_test(test_a_pause_longer_than_the_shortest_window_starts_it_anew),
         cmocka_unit_test(test_a_clock_that_goes_back_is_told_and_starts_windows_anew),
         cmocka_unit_test(test_a_hall_with_a_lost_monitor_is_never_well),

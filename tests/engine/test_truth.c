@@ -23,6 +23,13 @@
 #include "ullage/simulator.h"
 
 enum { QUANTITIES = 5, HISTORY = 9000 };
+/* Sanitizers make all of it five times slower: fewer hours and seeds then. */
+#if defined(__SANITIZE_ADDRESS__) || defined(__SANITIZE_THREAD__)
+enum { DAY_H = 8, SEEDS = 24 };
+#else
+enum { DAY_H = 24, SEEDS = 60 };
+#endif
+
 /* A plant and the quantities judged. */
 struct subject {
     const char *path, *names[QUANTITIES];
@@ -132,7 +139,7 @@ static void test_a_quiet_day_lies_within_two_u(void **state)
 {
     (void)state;
     struct score score[QUANTITIES] = {{0}};
-    run(&store, 11, NULL, 24, 10, 7200, score);
+    run(&store, 11, NULL, DAY_H, 10, 7200, score);
     /* One plant has one error of each gauge: what rests on a reading now says little here. */
     expect_coverage(&store, score, 3, 0.8, 0.05);
 }
@@ -141,10 +148,10 @@ static void test_many_plants_neither_narrow_nor_empty(void **state)
 {
     (void)state;
     struct score score[QUANTITIES] = {{0}};
-    for (uint64_t seed = 101; seed < 161; seed++)
+    for (uint64_t seed = 101; seed < 101 + SEEDS; seed++)
         run(&dewar, seed, NULL, 0.25, 1, 440, score);
-    /* Of 95 % in 60 plants: below 86 % hardly ever (binomial, 3 sigma). */
-    expect_coverage(&dewar, score, QUANTITIES, 0.86, 0.5);
+    /* Of 95 % in 60 plants: below 86 % hardly ever (binomial, 3 sigma); in 24, 81 %. */
+    expect_coverage(&dewar, score, QUANTITIES, SEEDS < 60 ? 0.81 : 0.86, 0.5);
 }
 
 static void test_a_step_of_heat_lies_within_two_u_a_window_later(void **state)
