@@ -24,8 +24,8 @@ static void name_input(char *text, size_t size, const struct engine *engine,
     while (text[used] != '\0')
         used++;
     if (used < size)
-        (void)snprintf(text + used, size - used, "%s%s", used > 0 ? ", " : "",
-                       plant_tag_name(engine->plant, ref->tag));
+        text_format(text + used, size - used, "%s%s", used > 0 ? ", " : "",
+                    plant_tag_name(engine->plant, ref->tag));
 }
 
 static void name_flows(char *text, size_t size, const struct engine *engine,
@@ -55,12 +55,12 @@ static void say_heat(const struct engine *engine, const struct ledger *ledger, c
     char flows[80];
     name_flows(flows, sizeof(flows), engine, state);
     double excess = -ledger->unexplained.value;
-    (void)snprintf(text, size,
-                   "heat load %.0f W %s than budget (u %.0f W): %s, or a meter lies: %s",
-                   fabs(excess), excess > 0 ? "more" : "less", ledger->unexplained.u,
-                   excess > 0 ? "worse insulation, lost vacuum"
-                              : "vapour leaves unmetered, budget too high",
-                   flows[0] != '\0' ? flows : "see the inputs");
+    text_format(text, size,
+                "heat load %.0f W %s than budget (u %.0f W): %s, or a meter lies: %s",
+                fabs(excess), excess > 0 ? "more" : "less", ledger->unexplained.u,
+                excess > 0 ? "worse insulation, lost vacuum"
+                           : "vapour leaves unmetered, budget too high",
+                flows[0] != '\0' ? flows : "see the inputs");
 }
 
 static void say_mass(const struct engine *engine, const struct ledger *ledger, char *text,
@@ -71,7 +71,7 @@ static void say_mass(const struct engine *engine, const struct ledger *ledger, c
     name_input(level, sizeof(level), engine, &state->vessel->level);
     name_flows(flows, sizeof(flows), engine, state);
     const char *hall = ledger->unexplained.value > 0 ? hall_with_release(engine) : NULL;
-    (void)snprintf(
+    text_format(
         text, size, "%.3g g/s %s (u %.2g): %s%s%s, gauge %s drifts, or a meter lies: %s",
         1000 * fabs(ledger->unexplained.value),
         ledger->unexplained.value > 0 ? "lost" : "gained", 1000 * ledger->unexplained.u,
@@ -83,14 +83,14 @@ static void say_mass(const struct engine *engine, const struct ledger *ledger, c
 static void say_air(const struct ledger *ledger, char *text, size_t size)
 {
     if (ledger->unexplained.value > 0)
-        (void)snprintf(text, size,
-                       "%.3g g/s of gas released into the hall (u %.2g), or monitors "
-                       "read low, or the ventilation reads high",
-                       1000 * ledger->unexplained.value, 1000 * ledger->unexplained.u);
+        text_format(text, size,
+                    "%.3g g/s of gas released into the hall (u %.2g), or monitors "
+                    "read low, or the ventilation reads high",
+                    1000 * ledger->unexplained.value, 1000 * ledger->unexplained.u);
     else
-        (void)snprintf(text, size,
-                       "more oxygen than fresh air brings: monitors read high, or "
-                       "oxygen enters the hall");
+        text_format(text, size,
+                    "more oxygen than fresh air brings: monitors read high, or "
+                    "oxygen enters the hall");
 }
 
 static void tell(struct engine *engine, const struct ledger *ledger, bool opened)
