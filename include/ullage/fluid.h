@@ -45,7 +45,7 @@ const struct fluid_limits *fluid_limits(const struct fluid *fluid);
 
 /* A state. In the two-phase region density, enthalpy, entropy and internal energy are those of
  * the mixture; cp and sound speed do not exist there and are 0, cv and the pressure derivatives
- * too. */
+ * too. At the critical point itself cp is beyond all bounds and 0 stands for it. */
 struct fluid_state {
     double temperature_k, pressure_pa, density_kg_m3;
     double enthalpy_j_kg, entropy_j_kg_k, internal_energy_j_kg;

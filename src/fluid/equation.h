@@ -141,6 +141,22 @@ void state_fill(const struct isotherm *isotherm, double density_mol_m3,
 int density_solve(const struct isotherm *isotherm, double pressure_pa, enum fluid_phase wanted,
                   double start_mol_m3, double *density_mol_m3);
 
+/* Near the critical point: reduced densities where each branch ends (its spinodal), and those
+ * of both phases in equilibrium as a cubic tells them. All the same where the isotherm has but
+ * one branch. */
+struct critical_branches {
+    double liquid, vapour, liquid_end, vapour_end;
+};
+struct critical_branches critical_branches(const struct isotherm *isotherm);
+/* As density_solve, for a stable state beside the saturated density of its branch. ERR_RANGE on
+ * that density's far side. */
+int critical_density_solve(const struct isotherm *isotherm, double pressure_pa,
+                           enum fluid_phase wanted, double edge_mol_m3, double *density_mol_m3);
+
+/* Whether the saturation line of the equation itself reaches this pressure, its critical point
+ * left out. */
+bool saturation_has_pressure(const struct fluid *fluid, double pressure_pa);
+
 /* Starting values of the saturation line; within 1 % or so. */
 double ancillary_pressure_pa(const struct fluid *fluid, double temperature_k);
 double ancillary_liquid_mol_m3(const struct fluid *fluid, double temperature_k);

@@ -14,9 +14,11 @@
 
 enum { STEPS_MAX = 60 };
 
-/* Closer to the critical temperature than this (relative) the two roots are one for a double.
+/* Closer to the critical temperature than this (relative) the auxiliary equations are no start.
  */
-static const double CRITICAL_GAP = 1e-9;
+static const double CRITICAL_NEAR = 1e-3;
+/* The published triple and critical pressures differ less than this from the equation's. */
+static const double ROUNDED = 1e-2;
 
 /* p/(R T rho_r) and g/(R T) up to terms of temperature alone, with their density derivatives.
  */
@@ -63,6 +65,19 @@ static int densities_at(const struct isotherm *isotherm, double *liquid, double 
     return last < 1e-9 ? 0 : ERR_CONVERGE;
 }
 
+static void densities_near_critical(const struct isotherm *isotherm, double *liquid,
+                                    double *vapour)
+{
+    struct critical_branches cubic = critical_branches(isotherm);
+    double l = *liquid = cubic.liquid, v = *vapour = cubic.vapour;
+    /* So near that Newton finds nothing the cubic is better than any double tells. */
+    if (l > v && densities_at(isotherm, &l, &v) == 0 && l > cubic.liquid_end &&
+        v < cubic.vapour_end) {
+        *liquid = l;
+        *vapour = v;
+    }
+}
+
 static void fill(const struct isotherm *isotherm, double liquid, double vapour,
                  struct fluid_saturation *out)
 {
@@ -101,9 +116,9 @@ int fluid_saturation_at_t(const struct fluid *fluid, double temperature_k,
     double reduce = fluid->reduce_density_mol_m3;
     double liquid = ancillary_liquid_mol_m3(fluid, temperature_k) / reduce;
     double vapour = ancillary_vapour_mol_m3(fluid, temperature_k) / reduce;
-    if (limits->critical_temperature_k - temperature_k <
-        CRITICAL_GAP * limits->critical_temperature_k) {
-        liquid = vapour = fluid->critical_density_mol_m3 / reduce;
+    double gap = 1 - temperature_k / limits->critical_temperature_k;
+    if (gap < CRITICAL_NEAR) {
+        densities_near_critical(&isotherm, &liquid, &vapour);
     } else if (densities_at(&isotherm, &liquid, &vapour) != 0) {
         return error_set(err, ERR_CONVERGE, "%s: saturation at %.9g K was not found",
                          fluid->name, temperature_k);
@@ -157,14 +172,38 @@ static int by_bisection(const struct fluid *fluid, double pressure,
     return fluid_saturation_at_t(fluid, 0.5 * (low + high), out, NULL);
 }
 
+bool saturation_has_pressure(const struct fluid *fluid, double pressure_pa)
+{
+    const struct fluid_limits *limits = &fluid->limits;
+    double low = limits->triple_pressure_pa, high = limits->critical_pressure_pa;
+    struct fluid_saturation end;
+    if (fabs(pressure_pa / low - 1) < ROUNDED &&
+        fluid_saturation_at_t(fluid, limits->triple_temperature_k, &end, NULL) == 0)
+        low = end.pressure_pa;
+    if (fabs(pressure_pa / high - 1) < ROUNDED &&
+        fluid_saturation_at_t(fluid, limits->critical_temperature_k, &end, NULL) == 0)
+        high = end.pressure_pa;
+    return pressure_pa >= low * (1 - 1e-9) && pressure_pa < high * (1 - 1e-12);
+}
+
 int fluid_saturation_at_p(const struct fluid *fluid, double pressure_pa,
                           struct fluid_saturation *out, struct error *err)
 {
     const struct fluid_limits *limits = &fluid->limits;
     struct fluid_saturation found;
-    /* The triple pressure of the tables is a rounded number; the equation's own decides. */
-    if (!(pressure_pa >= limits->triple_pressure_pa * (1 - 1e-6) &&
-          pressure_pa <= limits->critical_pressure_pa * (1 + 1e-9)))
+    /* The pressures of the tables are rounded; the equation's own decide. */
+    bool within = saturation_has_pressure(fluid, pressure_pa);
+    if (!within && fabs(pressure_pa / limits->critical_pressure_pa - 1) < ROUNDED) {
+        int code = fluid_saturation_at_t(fluid, limits->critical_temperature_k, &found, err);
+        double critical = fmax(found.pressure_pa, limits->critical_pressure_pa);
+        if (code != 0)
+            return code;
+        if (pressure_pa <= critical * (1 + 1e-9)) {
+            *out = found;
+            return 0;
+        }
+    }
+    if (!within)
         return error_set(err, ERR_RANGE,
                          "%s: saturation exists from the triple to the critical point, %.6g to "
                          "%.6g Pa (asked: %.6g Pa)",

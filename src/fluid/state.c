@@ -18,11 +18,15 @@ static const double NEAR_LINE = 0.03;
 /* A state this near to the line (relative in pressure) is on it: a double cannot tell. */
 static const double ON_LINE = 1e-11;
 
+/* Solid-like densities beyond any validity; over the critical one. */
+static const double DENSEST = 12;
+static const double SMALL_PRESSURE_PA = 1e-3;
+
 /* Where the branches begin at a temperature, and the vapour pressure as well as it is needed.
  */
 struct line {
     double pressure, liquid, vapour; /* molar densities */
-    bool full;
+    bool full, near_critical;
     struct fluid_saturation saturation;
 };
 
@@ -34,7 +38,8 @@ static int line_at(const struct fluid *fluid, double temperature, double pressur
     line->liquid = ancillary_liquid_mol_m3(fluid, temperature);
     line->vapour = ancillary_vapour_mol_m3(fluid, temperature);
     bool near = fabs(pressure / line->pressure - 1) < NEAR_LINE;
-    line->full = part > ANCILLARY_SAFE || (wanted == FLUID_PHASE_ANY && near);
+    line->near_critical = part > ANCILLARY_SAFE;
+    line->full = line->near_critical || (wanted == FLUID_PHASE_ANY && near);
     if (!line->full)
         return 0;
     int code = fluid_saturation_at_t(fluid, temperature, &line->saturation, err);
@@ -62,6 +67,7 @@ int fluid_at_tp(const struct fluid *fluid, double temperature_k, double pressure
         return code;
     struct isotherm isotherm;
     struct fluid_state state = {0};
+    struct line line = {0};
     double density, ideal = pressure_pa / (limits->gas_constant_j_mol_k * temperature_k);
     bool above = temperature_k >= limits->critical_temperature_k;
     enum fluid_phase phase = above ? FLUID_PHASE_SUPERCRITICAL : wanted;
@@ -69,7 +75,6 @@ int fluid_at_tp(const struct fluid *fluid, double temperature_k, double pressure
         return no_phase(fluid, wanted, temperature_k, pressure_pa, err);
     double start = ideal;
     if (!above) {
-        struct line line;
         if (wanted == FLUID_PHASE_SUPERCRITICAL || wanted == FLUID_PHASE_TWO_PHASE)
             return no_phase(fluid, wanted, temperature_k, pressure_pa, err);
         code = line_at(fluid, temperature_k, pressure_pa, wanted, &line, err);
@@ -82,13 +87,23 @@ int fluid_at_tp(const struct fluid *fluid, double temperature_k, double pressure
         state.saturated = line.full && fabs(pressure_pa / line.pressure - 1) < ON_LINE;
     }
     isotherm_set(&isotherm, fluid, temperature_k);
-    code = density_solve(&isotherm, pressure_pa, phase, start, &density);
+    code = ERR_RANGE;
+    if (line.near_critical)
+        code = critical_density_solve(&isotherm, pressure_pa, phase,
+                                      phase == FLUID_PHASE_LIQUID ? line.liquid : line.vapour,
+                                      &density);
+    if (code == ERR_RANGE && !(line.near_critical && line.liquid == line.vapour))
+        code = density_solve(&isotherm, pressure_pa, phase, start, &density);
     if (code == ERR_RANGE)
         return no_phase(fluid, phase, temperature_k, pressure_pa, err);
     if (code != 0)
         return error_set(err, code, "%s: density at %.9g K and %.9g Pa was not found",
                          fluid->name, temperature_k, pressure_pa);
     state_fill(&isotherm, density, &state);
+    /* A search that came to rest at the end of its branch has found no state. */
+    double reach = pressure_pa + state.density_kg_m3 * fabs(state.dp_drho_pa_m3_kg);
+    if (!(fabs(state.pressure_pa - pressure_pa) <= 1e-9 * reach))
+        return no_phase(fluid, phase, temperature_k, pressure_pa, err);
     /* The pressure asked for, not its image through a stiff liquid's density. */
     state.pressure_pa = pressure_pa;
     state.enthalpy_j_kg = state.internal_energy_j_kg + pressure_pa / state.density_kg_m3;
@@ -154,22 +169,26 @@ int fluid_at_px(const struct fluid *fluid, double pressure_pa, double vapour_fra
     return code;
 }
 
-int fluid_at_rhot(const struct fluid *fluid, double density_kg_m3, double temperature_k,
-                  struct fluid_state *out, struct error *err)
+/* Without a look at pressure: it may be beyond the validity. */
+static int at_rhot(const struct fluid *fluid, double density, double temperature,
+                   struct fluid_state *out, struct error *err)
 {
     const struct fluid_limits *limits = &fluid->limits;
-    if (!(density_kg_m3 > 0) || !isfinite(density_kg_m3))
-        return error_set(err, ERR_RANGE, "%s: density must be above 0", fluid->name);
-    int code = validity_check(fluid, temperature_k, 1e-3, err);
+    int code = validity_check(fluid, temperature, SMALL_PRESSURE_PA, err);
     if (code != 0)
         return code;
+    if (!(density > 0 && density < DENSEST * limits->critical_density_kg_m3))
+        return error_set(err, ERR_RANGE,
+                         "%s: density must be above 0 and below what its equation can tell "
+                         "(asked: %.6g kg/m3)",
+                         fluid->name, density);
     struct fluid_state state = {.phase = FLUID_PHASE_SUPERCRITICAL, .vapour_fraction = 1};
-    if (temperature_k < limits->critical_temperature_k) {
+    if (temperature < limits->critical_temperature_k) {
         struct fluid_saturation line;
-        code = fluid_saturation_at_t(fluid, temperature_k, &line, err);
+        code = fluid_saturation_at_t(fluid, temperature, &line, err);
         if (code != 0)
             return code;
-        double v = 1 / density_kg_m3, v_l = 1 / line.liquid.density_kg_m3;
+        double v = 1 / density, v_l = 1 / line.liquid.density_kg_m3;
         double v_v = 1 / line.vapour.density_kg_m3;
         if (v >= v_l && v <= v_v) {
             two_phase(&line, v_v > v_l ? (v - v_l) / (v_v - v_l) : 0, out);
@@ -179,9 +198,25 @@ int fluid_at_rhot(const struct fluid *fluid, double density_kg_m3, double temper
         state.vapour_fraction = v < v_l ? 0 : 1;
     }
     struct isotherm isotherm;
-    isotherm_set(&isotherm, fluid, temperature_k);
-    state_fill(&isotherm, molar_density(fluid, density_kg_m3), &state);
-    code = validity_check(fluid, temperature_k, state.pressure_pa, err);
+    isotherm_set(&isotherm, fluid, temperature);
+    state_fill(&isotherm, molar_density(fluid, density), &state);
+    *out = state;
+    return 0;
+}
+
+static int check_pressure(const struct fluid *fluid, const struct fluid_state *state,
+                          struct error *err)
+{
+    return validity_check(fluid, state->temperature_k, state->pressure_pa, err);
+}
+
+int fluid_at_rhot(const struct fluid *fluid, double density_kg_m3, double temperature_k,
+                  struct fluid_state *out, struct error *err)
+{
+    struct fluid_state state;
+    int code = at_rhot(fluid, density_kg_m3, temperature_k, &state, err);
+    if (code == 0)
+        code = check_pressure(fluid, &state, err);
     if (code == 0)
         *out = state;
     return code;
@@ -201,7 +236,7 @@ static int search_at(const struct search *search, double temperature, struct flu
 {
     int code;
     if (search->what == SEARCH_RHO_U)
-        code = fluid_at_rhot(search->fluid, search->density, temperature, state, NULL);
+        code = at_rhot(search->fluid, search->density, temperature, state, NULL);
     else
         code = fluid_at_tp(search->fluid, temperature, search->pressure, search->phase, state,
                            NULL);
@@ -278,34 +313,19 @@ int fluid_at_rhou(const struct fluid *fluid, double density_kg_m3, double intern
         .target = internal_energy_j_kg,
         .what = SEARCH_RHO_U,
     };
-    /* The path ends where the validity does: a dense fluid meets the pressure limit long before
-     * the highest temperature, and the solid below some temperature. */
-    double low = fluid->limits.triple_temperature_k, high = fluid->limits.max_temperature_k,
-           miss;
+    /* A dense fluid meets the pressure limit long before the highest temperature, and the solid
+     * at the lowest: the path goes through, and its end is looked at. */
     struct fluid_state state;
-    double valid = low;
-    bool low_valid = search_at(&search, low, &state, &miss) == 0;
-    if (!low_valid || search_at(&search, high, &state, &miss) != 0) {
-        for (double t = low; t < high; t *= 1.02) {
-            bool good = search_at(&search, t, &state, &miss) == 0;
-            if (good && !low_valid) {
-                low = t;
-                low_valid = true;
-            }
-            if (good)
-                valid = t;
-            else if (low_valid)
-                break;
-        }
-        if (search_at(&search, high, &state, &miss) != 0)
-            high = valid;
-    }
-    int code = low_valid ? search_solve(&search, low, high, out) : ERR_RANGE;
+    int code = search_solve(&search, fluid->limits.triple_temperature_k,
+                            fluid->limits.max_temperature_k, &state);
     if (code != 0)
         return error_set(err, code,
                          "%s: no state within the validity at %.6g kg/m3 and %.6g J/kg",
                          fluid->name, density_kg_m3, internal_energy_j_kg);
-    return 0;
+    code = check_pressure(fluid, &state, err);
+    if (code == 0)
+        *out = state;
+    return code;
 }
 
 /* The lowest temperature at which the fluid is not solid at a pressure. */
@@ -332,8 +352,7 @@ static int at_pressure(struct search *search, struct fluid_state *out, struct er
     int code = validity_check(fluid, high, search->pressure, err);
     if (code != 0)
         return code;
-    if (search->pressure >= fluid->limits.triple_pressure_pa &&
-        search->pressure < fluid->limits.critical_pressure_pa) {
+    if (saturation_has_pressure(fluid, search->pressure)) {
         struct fluid_saturation line;
         code = fluid_saturation_at_p(fluid, search->pressure, &line, err);
         if (code != 0)

@@ -267,7 +267,8 @@ void state_fill(const struct isotherm *isotherm, double density_mol_m3, struct f
     double cv = -(a0_tt + residual.tt);
     double stiffness = 1 + 2 * residual.density.d + residual.density.dd;
     double thermal = z - residual.dt;
-    double cp = cv + thermal * thermal / stiffness;
+    /* At the critical point it grows beyond all bounds. */
+    double cp = stiffness > 0 ? cv + thermal * thermal / stiffness : 0;
     double sound = stiffness + thermal * thermal / cv;
     double per_mass = r / molar_mass;
     out->temperature_k = temperature;
