@@ -227,6 +227,38 @@ static void test_condenser_duty_and_a_cooling_that_no_stream_carries(void **stat
     rig_close(&rig);
 }
 
+static void test_what_is_not_metered_is_taken_from_its_other_side(void **state)
+{
+    (void)state;
+    /* A tank that stands still: what came in is what the condenser condenses of the metered
+     * vapour (its condensate taken as saturated), less the pump, whatever the coolant's own
+     * figure says. What circulates through pump and purifier is inside. */
+    struct rig rig;
+    struct fluid_saturation argon, nitrogen;
+    rig_open(&rig, "tests/data/engine/loop.ini");
+    assert_int_equal(fluid_saturation_at_p(fluid_find("argon"), 110000, &argon, NULL), 0);
+    assert_int_equal(fluid_saturation_at_p(fluid_find("nitrogen"), 300000, &nitrogen, NULL), 0);
+    for (int i = 0; i < 120; i++) {
+        rig_set(&rig, "PT-1", 110000);
+        rig_set(&rig, "LT-1", 8);
+        rig_set(&rig, "FT-1", 0.03);
+        rig_set(&rig, "FT-2", 2.5);
+        rig_set(&rig, "JT-2", 800);
+        rig_set(&rig, "FT-3", 0.05);
+        rig_set(&rig, "PT-3", 300000);
+        rig_set(&rig, "TT-6", nitrogen.temperature_k);
+        rig_set(&rig, "PT-4", 250000);
+        rig_set(&rig, "TT-7", 95);
+        rig_step(&rig, STEP_S);
+    }
+    double latent = argon.vapour.enthalpy_j_kg - argon.liquid.enthalpy_j_kg;
+    assert_close(rig_value(&rig, "tank.heat_load"), 0.03 * latent - 800, 1e-6);
+    assert_near(rig_value(&rig, "tank.mass_unexplained"), 0, 1e-12);
+    assert_near(rig_ledger(&rig, LEDGER_MASS, 0)->out.value, 0, 1e-12);
+    assert_close(rig_value(&rig, "tank.boil_off"), 0.03, 1e-9);
+    rig_close(&rig);
+}
+
 static void test_ledgers_add_up_to_the_last_bit(void **state)
 {
     (void)state;
@@ -304,6 +336,7 @@ int main(void)
         cmocka_unit_test(test_a_falling_barometer_does_not_look_like_heat),
         cmocka_unit_test(test_a_lost_thermometer_does_not_look_like_heat),
         cmocka_unit_test(test_condenser_duty_and_a_cooling_that_no_stream_carries),
+        cmocka_unit_test(test_what_is_not_metered_is_taken_from_its_other_side),
         cmocka_unit_test(test_ledgers_add_up_to_the_last_bit),
         cmocka_unit_test(test_the_budget_of_an_uncertainty_adds_up_and_is_sorted),
     };
