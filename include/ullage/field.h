@@ -123,6 +123,11 @@ bool field_settled(const struct field *field);
  * a sample older than its point's stale time becomes stale), and the links' states. */
 void field_fill(struct field *field, int64_t utc_ns, struct frame *frame,
                 struct link_state *links);
+/* Polls the links of another plant from now on, in place of *field, which is closed. A link of
+ * the same name to the same device (host, port, unit, timeout) keeps its connection, its counts
+ * and the readings of points described alike; every other begins anew. The other links pause
+ * for one timeout of the slowest at most. On an error *field goes on as it was. */
+int field_reopen(struct field **field, const struct plant *plant, struct error *err) MUST_CHECK;
 /* Stops and joins the threads within one timeout of the slowest link. NULL is allowed. */
 void field_close(struct field *field);
 

@@ -18,7 +18,7 @@ struct field {
     struct arena *arena;
     const struct plant *plant;
     int wake_fd, stop_fd;
-    atomic_bool stopping;
+    atomic_bool stopping, keeping;
     int ready; /* workers whose slot and device exist */
     struct worker *worker;
 };
@@ -86,6 +86,7 @@ static int worker_init(struct field *field, int index, struct error *err)
     worker->wake_fd = field->wake_fd;
     worker->stop_fd = field->stop_fd;
     worker->stopping = &field->stopping;
+    worker->keeping = &field->keeping;
     worker->random = seed_of(link->name);
     worker->times.since_mono_ns = time_mono_ns();
     if (worker_memory(worker, field->arena) != 0)
@@ -105,7 +106,8 @@ static int worker_init(struct field *field, int index, struct error *err)
     return 0;
 }
 
-int field_open(const struct plant *plant, struct field **out, struct error *err)
+/* Everything but the threads. */
+static int field_make(const struct plant *plant, struct field **out, struct error *err)
 {
     struct field *field = calloc(1, sizeof(*field));
     if (field == NULL)
@@ -123,7 +125,18 @@ int field_open(const struct plant *plant, struct field **out, struct error *err)
         code = error_set(err, ERR_MEMORY, "no memory to poll the links");
     for (int i = 0; i < plant->link_count && code == 0; i++)
         code = worker_init(field, i, err);
-    for (int i = 0; i < plant->link_count && code == 0; i++) {
+    if (code != 0) {
+        field_close(field);
+        return code;
+    }
+    *out = field;
+    return 0;
+}
+
+static int field_start(struct field *field, struct error *err)
+{
+    int code = 0;
+    for (int i = 0; i < field->ready && code == 0; i++) {
         struct worker *worker = &field->worker[i];
         int failure = thread_start(&worker->thread, false, link_run, worker);
         worker->started = failure == 0;
@@ -131,11 +144,67 @@ int field_open(const struct plant *plant, struct field **out, struct error *err)
             code = error_set(err, ERR_MEMORY, "link %s: no thread: %s", worker->link->name,
                              strerror(failure));
     }
-    if (code != 0) {
+    return code;
+}
+
+static void field_stop(struct field *field)
+{
+    atomic_store(&field->stopping, true);
+    if (field->stop_fd >= 0)
+        eventfd_write(field->stop_fd, 1);
+    for (int i = 0; i < field->ready; i++) {
+        if (field->worker[i].started)
+            pthread_join(field->worker[i].thread, NULL);
+        field->worker[i].started = false;
+    }
+}
+
+int field_open(const struct plant *plant, struct field **out, struct error *err)
+{
+    struct field *field = NULL;
+    int code = field_make(plant, &field, err);
+    if (code == 0 && (code = field_start(field, err)) != 0) {
         field_close(field);
         return code;
     }
-    *out = field;
+    if (code == 0)
+        *out = field;
+    return code;
+}
+
+int field_reopen(struct field **field, const struct plant *plant, struct error *err)
+{
+    struct field *old = *field, *next = NULL;
+    int code = field_make(plant, &next, err);
+    if (code != 0)
+        return code;
+    atomic_store(&old->keeping, true);
+    field_stop(old);
+    for (int i = 0; i < next->ready; i++)
+        for (int k = 0; k < old->ready; k++)
+            worker_succeed(&next->worker[i], &old->worker[k]);
+    code = field_start(next, err);
+    if (code != 0) {
+        /* No threads for the new links: the old ones go on, over new connections. */
+        struct error ignored;
+        field_close(next);
+        atomic_store(&old->keeping, false);
+        atomic_store(&old->stopping, false);
+        eventfd_t stops;
+        eventfd_read(old->stop_fd, &stops);
+        for (int k = 0; k < old->ready; k++)
+            if (old->worker[k].device.context == NULL) {
+                const struct link *link = old->worker[k].link;
+                if (device_init(&old->worker[k].device, link->host, link->port, link->unit_id,
+                                link->timeout_s, &ignored) != 0)
+                    log_error("link %s: cannot be polled again", link->name);
+            }
+        if (field_start(old, &ignored) != 0)
+            log_error("%s", ignored.text);
+        return code;
+    }
+    field_close(old);
+    *field = next;
     return 0;
 }
 
@@ -209,14 +278,7 @@ void field_close(struct field *field)
 {
     if (field == NULL)
         return;
-    atomic_store(&field->stopping, true);
-    if (field->stop_fd >= 0)
-        eventfd_write(field->stop_fd, 1);
-    for (int i = 0; i < field->ready; i++) {
-        struct worker *worker = &field->worker[i];
-        if (worker->started)
-            pthread_join(worker->thread, NULL);
-    }
+    field_stop(field);
     for (int i = 0; i < field->ready; i++) {
         device_done(&field->worker[i].device);
         pthread_mutex_destroy(&field->worker[i].slot.lock);

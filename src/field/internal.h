@@ -133,6 +133,7 @@ struct worker {
     const struct link *link;
     int index, stop_fd, wake_fd;
     const atomic_bool *stopping; /* set before stop_fd becomes readable */
+    const atomic_bool *keeping;  /* the connection outlives the thread, for its successor */
     pthread_t thread;
     bool started;
     struct device device;
@@ -170,6 +171,9 @@ enum { POLL_STOPPED = 256 };
  * connection can no longer be trusted. What was read before stands in the readings either way.
  */
 int poll_turn(struct worker *worker, struct error *err) MUST_CHECK;
+/* Takes the connection, counts and readings of a worker whose thread has ended, if it polled
+ * the same device; before this one's thread starts. */
+void worker_succeed(struct worker *worker, struct worker *old);
 /* The thread: polls until stop_fd becomes readable. */
 void *link_run(void *context);
 

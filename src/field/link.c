@@ -206,6 +206,7 @@ void *link_run(void *context)
         }
         hand_over(worker);
     }
-    device_close(&worker->device);
+    if (!atomic_load(worker->keeping))
+        device_close(&worker->device);
     return NULL;
 }
