@@ -68,6 +68,16 @@ const struct view *collector_view(const struct collector *collector);
  * full. */
 int collector_command(struct collector *collector, const struct command *command,
                       struct error *err) MUST_CHECK;
+/* Goes on with another plant, which must outlive the collector; the old one is then the
+ * caller's to free. Links that still mean the same device keep their connection; windows,
+ * trends and alarms begin anew, since they may mean other things. The next frame is made at
+ * once. On an error all is as it was. */
+int collector_reload(struct collector *collector, const struct plant *plant,
+                     struct error *err) MUST_CHECK;
+/* Writes an entry of the program itself (JOURNAL_CONFIG, JOURNAL_PROGRAM) into the journal, at
+ * the time of the last frame. */
+void collector_note(struct collector *collector, enum journal_kind kind, const char *subject,
+                    const char *state, const char *text);
 /* Frames made, and ticks of the schedule that passed without one. */
 void collector_counts(const struct collector *collector, uint64_t *frames, uint64_t *missed);
 

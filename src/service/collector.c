@@ -26,16 +26,21 @@
 
 enum { COMMAND_MAX = 64 };
 
-struct collector {
-    const struct plant *plant;
+/* What a plant needs of its own: replaced as a whole when the plant is. */
+struct making {
     struct arena *arena;
     struct engine *engine;
-    struct field *field;
-    int epoll_fd, timer_fd;
-    bool first_wanted; /* the first frame is made on the links' word, not the timer's */
     struct frame frame;
     struct link_state *link;
     enum link_phase *link_before;
+};
+
+struct collector {
+    const struct plant *plant;
+    struct making made;
+    struct field *field;
+    int epoll_fd, timer_fd;
+    bool first_wanted; /* the first frame is made on the links' word, not the timer's */
     uint64_t frames, missed;
     int command_count;
     struct command command[COMMAND_MAX];
@@ -69,11 +74,12 @@ static void journal_links(struct collector *collector, int64_t utc_ns)
 {
     struct journal_step step = {.count = 0};
     for (int i = 0; i < collector->plant->link_count; i++) {
-        const struct link_state *now = &collector->link[i];
-        bool was_up = collector->link_before[i] == LINK_UP;
+        const struct link_state *now = &collector->made.link[i];
+        bool was_up = collector->made.link_before[i] == LINK_UP;
         bool is_up = now->phase == LINK_UP;
-        bool newly_down = now->phase == LINK_DOWN && collector->link_before[i] != LINK_DOWN;
-        collector->link_before[i] = now->phase;
+        bool newly_down =
+            now->phase == LINK_DOWN && collector->made.link_before[i] != LINK_DOWN;
+        collector->made.link_before[i] = now->phase;
         if (is_up == was_up && !newly_down)
             continue;
         if (step.count == JOURNAL_STEP_MAX)
@@ -90,29 +96,68 @@ static void judge_age(struct collector *collector)
 {
     struct view *view = &collector->view;
     int64_t newest = 0;
-    bool live = collector->frame.count == 0;
-    for (int i = 0; i < collector->frame.count; i++) {
-        const struct sample *sample = &collector->frame.sample[i];
+    bool live = collector->made.frame.count == 0;
+    for (int i = 0; i < collector->made.frame.count; i++) {
+        const struct sample *sample = &collector->made.frame.sample[i];
         if (sample->read_utc_ns > newest)
             newest = sample->read_utc_ns;
         if (sample->read_utc_ns != 0 && sample->quality != QUALITY_STALE)
             live = true;
     }
     view->stale = !live;
-    view->stale_s = newest != 0 ? time_ns_to_s(collector->frame.utc_ns - newest) : 0;
+    view->stale_s = newest != 0 ? time_ns_to_s(collector->made.frame.utc_ns - newest) : 0;
 }
 
 static void publish(struct collector *collector, const struct results *results)
 {
     struct view *view = &collector->view;
-    view->utc_ns = collector->frame.utc_ns;
+    view->utc_ns = collector->made.frame.utc_ns;
     view->results = results;
     view->links_up = 0;
     for (int i = 0; i < collector->plant->link_count; i++)
-        view->links_up += collector->link[i].phase == LINK_UP;
+        view->links_up += collector->made.link[i].phase == LINK_UP;
     for (int i = 0; i < results->journal.count; i++)
         journal_keep(collector, &results->journal.at[i]);
     judge_age(collector);
+}
+
+static void unmake(struct making *making)
+{
+    engine_free(making->engine);
+    arena_free(making->arena);
+}
+
+static int make(const struct plant *plant, struct making *out, struct error *err)
+{
+    size_t links = (size_t)plant->link_count + 1;
+    *out = (struct making){.arena = arena_create()};
+    int code = out->arena == NULL ? ERR_MEMORY : frame_init(&out->frame, plant, out->arena);
+    if (code == 0) {
+        out->link = arena_take(out->arena, links, sizeof(*out->link));
+        out->link_before = arena_take(out->arena, links, sizeof(*out->link_before));
+        if (out->link == NULL || out->link_before == NULL)
+            code = ERR_MEMORY;
+    }
+    if (code != 0)
+        error_set(err, code, "no memory for the collector");
+    else
+        code = engine_create(plant, &out->engine, err);
+    if (code != 0)
+        unmake(out);
+    return code;
+}
+
+static void adopt(struct collector *collector, const struct plant *plant, struct making *making)
+{
+    struct view *view = &collector->view;
+    collector->plant = plant;
+    collector->made = *making;
+    view->plant = plant;
+    view->frame = &collector->made.frame;
+    view->results = engine_results(making->engine);
+    view->engine = making->engine;
+    view->alarms = engine_alarms(making->engine);
+    view->link = making->link;
 }
 
 int collector_open(const struct plant *plant, const struct collector_options *options,
@@ -121,43 +166,21 @@ int collector_open(const struct plant *plant, const struct collector_options *op
     struct collector *collector = calloc(1, sizeof(*collector));
     if (collector == NULL)
         return error_set(err, ERR_MEMORY, "no memory for the collector");
-    collector->plant = plant;
     collector->epoll_fd = collector->timer_fd = -1;
-    collector->arena = arena_create();
-    int code = ERR_MEMORY;
-    if (collector->arena == NULL)
-        goto fail;
-    size_t links = (size_t)plant->link_count;
-    collector->link = arena_take(collector->arena, links + 1, sizeof(*collector->link));
-    collector->link_before =
-        arena_take(collector->arena, links + 1, sizeof(*collector->link_before));
-    collector->journal =
-        arena_take(collector->arena, JOURNAL_ROOM, sizeof(*collector->journal));
-    if (collector->link == NULL || collector->link_before == NULL || collector->journal == NULL)
-        goto fail;
-    code = frame_init(&collector->frame, plant, collector->arena);
-    if (code != 0)
-        goto fail;
-    code = engine_create(plant, &collector->engine, err);
-    if (code != 0)
-        goto out;
-    collector->view = (struct view){
-        .plant = plant,
-        .mode = options->mode,
-        .frame = &collector->frame,
-        .results = engine_results(collector->engine),
-        .engine = collector->engine,
-        .alarms = engine_alarms(collector->engine),
-        .link = collector->link,
-        .journal = collector->journal,
-    };
+    collector->journal = calloc(JOURNAL_ROOM, sizeof(*collector->journal));
+    struct making making;
+    int code = collector->journal == NULL
+                   ? error_set(err, ERR_MEMORY, "no memory for the collector")
+                   : make(plant, &making, err);
+    if (code != 0) {
+        free(collector->journal);
+        free(collector);
+        return code;
+    }
+    collector->view = (struct view){.mode = options->mode, .journal = collector->journal};
+    adopt(collector, plant, &making);
     *out = collector;
     return 0;
-fail:
-    error_set(err, code, "no memory for the collector");
-out:
-    collector_close(collector);
-    return code;
 }
 
 void collector_close(struct collector *collector)
@@ -169,14 +192,14 @@ void collector_close(struct collector *collector)
         close(collector->timer_fd);
     if (collector->epoll_fd >= 0)
         close(collector->epoll_fd);
-    engine_free(collector->engine);
-    arena_free(collector->arena);
+    unmake(&collector->made);
+    free(collector->journal);
     free(collector);
 }
 
 void collector_feed(struct collector *collector, const struct frame *frame)
 {
-    const struct results *results = engine_step(collector->engine, frame, NULL, 0);
+    const struct results *results = engine_step(collector->made.engine, frame, NULL, 0);
     for (int i = 0; i < results->journal.count; i++)
         journal_keep(collector, &results->journal.at[i]);
 }
@@ -187,7 +210,8 @@ static int watch_fd(struct collector *collector, int fd)
     return epoll_ctl(collector->epoll_fd, EPOLL_CTL_ADD, fd, &event);
 }
 
-int collector_start(struct collector *collector, struct error *err)
+/* A frame period from now, and from then on by the period. */
+static int set_schedule(struct collector *collector)
 {
     int64_t period_ns = time_s_to_ns(collector->plant->site.frame_s);
     struct timespec period = {.tv_sec = period_ns / NS_PER_S, .tv_nsec = period_ns % NS_PER_S};
@@ -195,11 +219,14 @@ int collector_start(struct collector *collector, struct error *err)
     int64_t first_ns = time_mono_ns() + period_ns;
     schedule.it_value.tv_sec = first_ns / NS_PER_S;
     schedule.it_value.tv_nsec = first_ns % NS_PER_S;
+    return timerfd_settime(collector->timer_fd, TFD_TIMER_ABSTIME, &schedule, NULL);
+}
 
+int collector_start(struct collector *collector, struct error *err)
+{
     collector->epoll_fd = epoll_create1(EPOLL_CLOEXEC);
     collector->timer_fd = timerfd_create(CLOCK_MONOTONIC, TFD_CLOEXEC | TFD_NONBLOCK);
-    if (collector->epoll_fd < 0 || collector->timer_fd < 0 ||
-        timerfd_settime(collector->timer_fd, TFD_TIMER_ABSTIME, &schedule, NULL) != 0)
+    if (collector->epoll_fd < 0 || collector->timer_fd < 0 || set_schedule(collector) != 0)
         return error_set(err, ERR_IO, "the frame timer cannot be set: %s", strerror(errno));
     int code = field_open(collector->plant, &collector->field, err);
     if (code != 0)
@@ -228,8 +255,8 @@ static void make_frame(struct collector *collector)
 {
     int64_t utc_ns = time_utc_ns();
     utc_ns -= utc_ns % NS_PER_MS;
-    field_fill(collector->field, utc_ns, &collector->frame, collector->link);
-    const struct results *results = engine_step(collector->engine, &collector->frame,
+    field_fill(collector->field, utc_ns, &collector->made.frame, collector->made.link);
+    const struct results *results = engine_step(collector->made.engine, &collector->made.frame,
                                                 collector->command, collector->command_count);
     collector->command_count = 0;
     collector->frames++;
@@ -250,12 +277,49 @@ bool collector_tick(struct collector *collector)
     }
     if (!due) {
         if (collector->first_wanted)
-            field_fill(collector->field, collector->frame.utc_ns, &collector->frame,
-                       collector->link); /* clears the wake */
+            field_fill(collector->field, collector->made.frame.utc_ns, &collector->made.frame,
+                       collector->made.link); /* clears the wake */
         return false;
     }
     make_frame(collector);
     return true;
+}
+
+int collector_reload(struct collector *collector, const struct plant *plant, struct error *err)
+{
+    struct making making;
+    int code = make(plant, &making, err);
+    if (code != 0)
+        return code;
+    if (collector->first_wanted)
+        stop_first_wait(collector);
+    code = field_reopen(&collector->field, plant, err);
+    if (code != 0) {
+        unmake(&making);
+        return code;
+    }
+    /* A link that kept its phase has no news for the journal. */
+    for (int i = 0; i < plant->link_count; i++)
+        for (int k = 0; k < collector->plant->link_count; k++)
+            if (strcmp(plant->link[i].name, collector->plant->link[k].name) == 0)
+                making.link_before[i] = collector->made.link_before[k];
+    unmake(&collector->made);
+    adopt(collector, plant, &making);
+    /* Commands name alarms by their number, which may be another's now. */
+    collector->command_count = 0;
+    if (set_schedule(collector) != 0)
+        log_error("the frame timer cannot be set: %s", strerror(errno));
+    make_frame(collector);
+    return 0;
+}
+
+void collector_note(struct collector *collector, enum journal_kind kind, const char *subject,
+                    const char *state, const char *text)
+{
+    struct journal_step step = {.count = 0};
+    journal_add(&step, collector->made.frame.utc_ns, kind, 0, subject, state, "", text);
+    for (int i = 0; i < step.count; i++)
+        journal_keep(collector, &step.at[i]);
 }
 
 const struct view *collector_view(const struct collector *collector)

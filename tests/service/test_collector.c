@@ -23,6 +23,7 @@
 static struct problems problems;
 
 struct rig {
+    struct plant *simulated; /* the simulator's own copy */
     struct plant *plant;
     struct simulator *simulator;
     struct simulator_server *server;
@@ -36,8 +37,9 @@ static void rig_start(struct rig *rig, const char *upset)
                                             .upset = upset != NULL ? upset_find(upset) : NULL};
     const struct collector_options options = {.mode = VIEW_LIVE};
     *rig = (struct rig){0};
-    if (plant_read("tests/data/e2e/dewar.ini", &rig->plant, &problems) != 0 ||
-        simulator_create(rig->plant, &model, &rig->simulator, &err) != 0 ||
+    if (plant_read("tests/data/e2e/dewar.ini", &rig->simulated, &problems) != 0 ||
+        plant_read("tests/data/e2e/dewar.ini", &rig->plant, &problems) != 0 ||
+        simulator_create(rig->simulated, &model, &rig->simulator, &err) != 0 ||
         simulator_serve(rig->simulator, "127.0.0.1", 0, 1, NULL, &rig->server, &err) != 0 ||
         plant_redirect(rig->plant, "127.0.0.1", simulator_server_port(rig->server)) != 0 ||
         collector_open(rig->plant, &options, &rig->collector, &err) != 0)
@@ -50,6 +52,7 @@ static void rig_stop(struct rig *rig)
     simulator_server_stop(rig->server);
     simulator_free(rig->simulator);
     plant_free(rig->plant);
+    plant_free(rig->simulated);
 }
 
 /* Ticks until the probe says so; the deadline is no measurement. */
@@ -195,6 +198,59 @@ static void test_too_many_commands_in_a_frame_are_refused_with_a_sentence(void *
     rig_stop(&rig);
 }
 
+static void
+test_another_plant_takes_over_and_an_unchanged_link_keeps_its_connection(void **state)
+{
+    struct rig rig;
+    struct error err = {0};
+    struct plant *next = NULL, *moved = NULL;
+    (void)state;
+    rig_start(&rig, NULL);
+    assert_int_equal(collector_start(rig.collector, &err), 0);
+    tick_until(&rig, is_ready, "a first frame");
+    const struct view *view = collector_view(rig.collector);
+    uint64_t requests = view->link[0].requests, total = view->journal_total;
+    assert_true(requests > 0);
+    int port = simulator_server_port(rig.server);
+    assert_int_equal(plant_read("tests/data/e2e/dewar.ini", &next, &problems), 0);
+    assert_int_equal(plant_redirect(next, "127.0.0.1", port), 0);
+    assert_int_equal(collector_reload(rig.collector, next, &err), 0);
+    plant_free(rig.plant); /* nothing may look at the old one any more */
+    rig.plant = next;
+    view = collector_view(rig.collector);
+    assert_ptr_equal(view->plant, next);
+    assert_int_equal(view->links_up, 1);
+    assert_false(view->stale);
+    /* Readings go over, so the first frame of the new plant is whole, with no gap. */
+    for (int i = 0; i < next->point_count; i++)
+        assert_int_equal(view->frame->sample[i].quality, QUALITY_GOOD);
+    assert_true(view->link[0].requests >= requests);
+    collector_note(rig.collector, JOURNAL_CONFIG, "plant file", "read again", "");
+    assert_true(collector_view(rig.collector)->journal_total ==
+                total + 1); /* no link went down */
+    uint64_t frames, missed;
+    collector_counts(rig.collector, &frames, &missed);
+    for (uint64_t now = frames; now < frames + 5;
+         collector_counts(rig.collector, &now, &missed)) {
+        struct pollfd fd = {.fd = collector_fd(rig.collector), .events = POLLIN};
+        poll(&fd, 1, 1000);
+        collector_tick(rig.collector);
+    }
+    assert_int_equal(collector_view(rig.collector)->link[0].reconnects, 0);
+    assert_true(collector_view(rig.collector)->link[0].requests > requests);
+    /* The same link to another device begins anew: here one that is not there. */
+    assert_int_equal(plant_read("tests/data/e2e/dewar.ini", &moved, &problems), 0);
+    assert_int_equal(plant_redirect(moved, "127.0.0.1", 1), 0);
+    assert_int_equal(collector_reload(rig.collector, moved, &err), 0);
+    plant_free(rig.plant);
+    rig.plant = moved;
+    for (int i = 0; i < moved->point_count; i++)
+        assert_int_equal(collector_view(rig.collector)->frame->sample[i].quality,
+                         QUALITY_MISSING);
+    tick_until(&rig, link_is_down, "link down");
+    rig_stop(&rig);
+}
+
 static void test_signals_arrive_as_events(void **state)
 {
     struct error err = {0};
@@ -219,6 +275,8 @@ int main(void)
             test_a_plant_that_is_gone_makes_the_view_stale_and_the_journal_says_so),
         cmocka_unit_test(test_an_acknowledgement_carries_its_user_and_the_banner_stays),
         cmocka_unit_test(test_too_many_commands_in_a_frame_are_refused_with_a_sentence),
+        cmocka_unit_test(
+            test_another_plant_takes_over_and_an_unchanged_link_keeps_its_connection),
         cmocka_unit_test(test_signals_arrive_as_events),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
