@@ -35,6 +35,10 @@ int record_writer_open(const char *path, const struct plant *plant, const char *
 int record_writer_append(struct record_writer *writer, const struct frame *frame,
                          const struct results *results, const struct journal_entry *journal,
                          int journal_count, struct error *err) MUST_CHECK;
+/* Goes on with another plant: its tags and its file are noted. On an error the writer goes on
+ * with the plant it had. */
+int record_writer_plant(struct record_writer *writer, const struct plant *plant,
+                        const char *plant_path, struct error *err) MUST_CHECK;
 void record_writer_close(struct record_writer *writer);
 
 /* ---- reading

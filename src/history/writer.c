@@ -185,6 +185,33 @@ int record_writer_open(const char *path, const struct plant *plant, const char *
     return 0;
 }
 
+int record_writer_plant(struct record_writer *writer, const struct plant *plant,
+                        const char *plant_path, struct error *err)
+{
+    const struct plant *old_plant = writer->plant;
+    int *old_ids = writer->tag_id;
+    int *ids = calloc((size_t)plant_tag_count(plant) + 1, sizeof(*ids));
+    if (ids == NULL)
+        return error_set(err, ERR_MEMORY, "no memory for the record");
+    int code = schema_run(writer->db, writer->path, "BEGIN IMMEDIATE", err);
+    writer->plant = plant;
+    writer->tag_id = ids;
+    if (code == 0)
+        code = note_tags(writer, err);
+    if (code == 0)
+        code = note_program(writer, plant_path, err);
+    if (code == 0)
+        code = schema_run(writer->db, writer->path, "COMMIT", err);
+    if (code != 0) {
+        sqlite3_exec(writer->db, "ROLLBACK", NULL, NULL, NULL);
+        writer->plant = old_plant;
+        writer->tag_id = old_ids;
+        old_ids = ids;
+    }
+    free(old_ids);
+    return code;
+}
+
 static int write_sample(struct record_writer *writer, int64_t utc_ns, int tag,
                         struct quantity q, int64_t read_utc_ns, struct error *err)
 {

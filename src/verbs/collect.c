@@ -21,7 +21,9 @@ static void print_help(void)
     puts("usage: ullage collect -c FILE [--history PATH] [--for SPAN]\n\n"
          "Polls the devices that FILE describes, computes, and writes every frame, what was "
          "computed\n"
-         "from it and the journal into a record. Without a screen, until SIGTERM or Ctrl-C.\n\n"
+         "from it and the journal into a record. Without a screen, until SIGTERM or Ctrl-C.\n"
+         "SIGHUP reads FILE again: only links that have changed connect anew; an invalid file\n"
+         "changes nothing.\n\n"
          "  -c, --config FILE   the plant file\n"
          "  --history PATH      the record (history in [site] if left out)\n"
          "  --for SPAN          end after this time, such as 20s or 4h");
@@ -60,10 +62,52 @@ static void record(struct record_writer *writer, const struct view *view, uint64
         *written = view->journal_total;
 }
 
-/* Frames until the end of the time asked for or a signal. */
-static int loop(struct collector *collector, struct record_writer *writer, int signals_fd,
-                double for_s, struct error *err)
+/* What is being collected, so that SIGHUP can put another plant in its place. */
+struct collecting {
+    const char *config;
+    struct plant *plant;
+    struct collector *collector;
+    struct record_writer *writer;
+};
+
+/* Reads the plant file again. An invalid one changes nothing and is told, here and in the
+ * journal. */
+static void reload(struct collecting *collecting)
 {
+    struct error err = {0};
+    struct plant *plant = NULL;
+    if (verb_read_plant(collecting->config, &plant) != 0) {
+        log_error("%s is not valid; the plant described before goes on", collecting->config);
+        collector_note(collecting->collector, JOURNAL_CONFIG, "plant file", "refused",
+                       "it is not valid; the plant described before goes on");
+        return;
+    }
+    int code = record_writer_plant(collecting->writer, plant, collecting->config, &err);
+    if (code == 0) {
+        code = collector_reload(collecting->collector, plant, &err);
+        struct error back = {0};
+        if (code != 0 && record_writer_plant(collecting->writer, collecting->plant,
+                                             collecting->config, &back) != 0)
+            log_error("%s", back.text);
+    }
+    if (code != 0) {
+        log_error("%s; the plant described before goes on", err.text);
+        collector_note(collecting->collector, JOURNAL_CONFIG, "plant file", "refused",
+                       err.text);
+        plant_free(plant);
+        return;
+    }
+    plant_free(collecting->plant);
+    collecting->plant = plant;
+    log_notice("collect: %s read again", collecting->config);
+    collector_note(collecting->collector, JOURNAL_CONFIG, "plant file", "read again",
+                   collecting->config);
+}
+
+/* Frames until the end of the time asked for or a signal. */
+static int loop(struct collecting *collecting, int signals_fd, double for_s, struct error *err)
+{
+    struct collector *collector = collecting->collector;
     struct pollfd fds[] = {
         {.fd = collector_fd(collector), .events = POLLIN},
         {.fd = signals_fd,              .events = POLLIN},
@@ -86,10 +130,9 @@ static int loop(struct collector *collector, struct record_writer *writer, int s
         if (signal == SIGINT || signal == SIGTERM)
             break;
         if (signal == SIGHUP)
-            log_notice(
-                "collect: reading the plant file again is not there yet; restart instead");
+            reload(collecting);
         if (collector_tick(collector))
-            record(writer, collector_view(collector), &written, &losses);
+            record(collecting->writer, collector_view(collector), &written, &losses);
     }
     if (losses.frames > 0)
         return error_set(err, ERR_IO, "%llu frames could not be recorded",
@@ -100,30 +143,29 @@ static int loop(struct collector *collector, struct record_writer *writer, int s
 static int run(const char *config, const char *history, double for_s)
 {
     struct error err = {0};
-    struct plant *plant = NULL;
-    struct collector *collector = NULL;
-    struct record_writer *writer = NULL;
+    struct collecting collecting = {.config = config};
     const struct collector_options options = {.mode = VIEW_LIVE};
-    if (verb_read_plant(config, &plant) != 0)
+    if (verb_read_plant(config, &collecting.plant) != 0)
         return EXIT_FAILED;
     if (history == NULL)
-        history = plant->site.history;
+        history = collecting.plant->site.history;
     int signals_fd = signals_open(&err);
-    int code =
-        signals_fd < 0 ? signals_fd : record_writer_open(history, plant, config, &writer, &err);
+    int code = signals_fd < 0 ? signals_fd
+                              : record_writer_open(history, collecting.plant, config,
+                                                   &collecting.writer, &err);
     if (code == 0)
-        code = collector_open(plant, &options, &collector, &err);
+        code = collector_open(collecting.plant, &options, &collecting.collector, &err);
     if (code == 0)
-        code = collector_start(collector, &err);
+        code = collector_start(collecting.collector, &err);
     if (code == 0)
-        code = loop(collector, writer, signals_fd, for_s, &err);
+        code = loop(&collecting, signals_fd, for_s, &err);
     if (code != 0)
         verb_failed("collect", &err);
-    collector_close(collector);
-    record_writer_close(writer);
+    collector_close(collecting.collector);
+    record_writer_close(collecting.writer);
     if (signals_fd >= 0)
         close(signals_fd);
-    plant_free(plant);
+    plant_free(collecting.plant);
     return code == 0 ? EXIT_DONE : EXIT_FAILED;
 }
 
