@@ -72,14 +72,19 @@ bool melting_pressure(const struct fluid *fluid, double temperature_k, double *p
     return false;
 }
 
+/* Less is no pressure of anything, and its reciprocals leave the range of a double. */
+static const double VACUUM_PA = 1e-30;
+
 int validity_check(const struct fluid *fluid, double temperature_k, double pressure_pa,
                    struct error *err)
 {
     const struct fluid_limits *limits = &fluid->limits;
     double melting;
-    if (!isfinite(temperature_k) || !isfinite(pressure_pa) || !(pressure_pa > 0))
-        return error_set(err, ERR_RANGE, "%s: temperature and pressure must be above 0",
-                         fluid->name);
+    if (!isfinite(temperature_k) || !isfinite(pressure_pa) || !(pressure_pa > VACUUM_PA))
+        return error_set(err, ERR_RANGE,
+                         "%s: temperature and pressure must be above 0 and finite (asked: %.6g "
+                         "K, %.6g Pa)",
+                         fluid->name, temperature_k, pressure_pa);
     if (temperature_k < limits->triple_temperature_k)
         return error_set(err, ERR_RANGE, "%s: %.6g K is below its triple point, %.6g K",
                          fluid->name, temperature_k, limits->triple_temperature_k);
@@ -109,9 +114,10 @@ int fluid_surface_tension(const struct fluid *fluid, double temperature_k, doubl
                          "%s: surface tension exists from the triple to the critical point, "
                          "%.6g to %.6g K",
                          fluid->name, fluid->limits.triple_temperature_k, critical);
+    /* Its own critical temperature may be rounded otherwise. */
+    double below = fmax(0, 1 - temperature_k / fluid->tension_temperature_k);
     for (int i = 0; i < fluid->tension_count; i++)
-        sum += fluid->tension_a[i] *
-               pow(1 - temperature_k / fluid->tension_temperature_k, fluid->tension_n[i]);
-    *tension_n_m = sum;
+        sum += fluid->tension_a[i] * pow(below, fluid->tension_n[i]);
+    *tension_n_m = fmax(0, sum);
     return 0;
 }

@@ -14,6 +14,7 @@
 static const double GOLDEN = 0.6180339887498949;
 /* Solid-like densities beyond any validity; over the critical one. */
 static const double DENSEST = 12;
+static const double EDGE_DIGITS = 1e-10;
 enum { STEPS_MAX = 200 };
 
 /* Slope of pressure over density, over R T. */
@@ -79,13 +80,13 @@ int critical_density_solve(const struct isotherm *isotherm, double pressure_pa,
 {
     double low = 0, high = edge_mol_m3, slope;
     double miss = pressure_at(isotherm, edge_mol_m3, &slope) - pressure_pa;
-    /* The edge's own pressure is known to some digits only. */
-    if (fabs(miss) <= 1e-14 * pressure_pa) {
+    if ((wanted == FLUID_PHASE_LIQUID) != (miss <= 0)) {
+        /* The edge's own pressure is known to some digits only. */
+        if (fabs(miss) > EDGE_DIGITS * pressure_pa)
+            return ERR_RANGE;
         *density_mol_m3 = edge_mol_m3;
         return 0;
     }
-    if ((wanted == FLUID_PHASE_LIQUID) != (miss < 0))
-        return ERR_RANGE;
     if (wanted == FLUID_PHASE_LIQUID) {
         do {
             low = high;

@@ -41,7 +41,7 @@ static struct branch branch_at(const struct isotherm *isotherm, double delta)
 
 static int densities_at(const struct isotherm *isotherm, double *liquid, double *vapour)
 {
-    double last = HUGE_VAL;
+    double last = HUGE_VAL, rest = 0;
     for (int i = 0; i < STEPS_MAX; i++) {
         struct branch l = branch_at(isotherm, *liquid), v = branch_at(isotherm, *vapour);
         double miss_p = v.pressure - l.pressure, miss_g = v.gibbs - l.gibbs;
@@ -58,11 +58,15 @@ static int densities_at(const struct isotherm *isotherm, double *liquid, double 
         *liquid += share * step_l;
         *vapour += share * step_v;
         double moved = fabs(step_l) / *liquid + fabs(step_v) / *vapour;
-        if (moved < 4 * DBL_EPSILON || (moved >= last && moved < 1e-10 && share == 1))
+        /* Where the branches meet slopes vanish, and what a double leaves of a step grows with
+         * the third power of their nearness. */
+        double apart = (*liquid - *vapour) / (*liquid + *vapour);
+        rest = 1e-10 + 1e-15 / (apart * apart * apart);
+        if (moved < 4 * DBL_EPSILON || (moved >= last && moved < rest && share == 1))
             return 0;
         last = moved;
     }
-    return last < 1e-9 ? 0 : ERR_CONVERGE;
+    return last < 10 * rest && rest < 1e-5 ? 0 : ERR_CONVERGE;
 }
 
 static void densities_near_critical(const struct isotherm *isotherm, double *liquid,
