@@ -127,6 +127,9 @@ golden: $(BUILD)/tests/screen/test_golden ## draw the pictures in tests/golden a
 bench: $(BENCHES) $(BUILD)/ullage ## print speeds, the figure to reach beside each
 	@for bench in $(BENCHES); do echo "$$bench"; BUILD='$(BUILD)' $$bench || exit 1; done
 
+soak: $(BUILD)/tests/field/test_soak ## links among misbehaving devices for a day; SOAK_S=seconds
+	ULLAGE_SOAK_S=$(or $(SOAK_S),86400) $<
+
 demo: ## the dashboard on a simulated plant; needs nothing else
 	@packaging/install-deps run
 	@$(MAKE) --no-print-directory $(PARALLEL) all
@@ -182,7 +185,7 @@ clean: ## remove $(BUILD)
 help: ## list the targets
 	@sed -n 's/^\([a-z-]*\):[^#]*## \(.*\)/  make \1	\2/p' Makefile | expand -t 20
 
-.PHONY: all tests check run-tests check-asan check-tsan golden bench demo format format-check lint doc \
+.PHONY: soak all tests check run-tests check-asan check-tsan golden bench demo format format-check lint doc \
         install uninstall dist clean help always
 .SECONDARY:
 -include $(patsubst %.c,$(BUILD)/%.d,$(SRC) $(TEST_SRC) $(BENCH_SRC))
