@@ -251,9 +251,68 @@ static void test_device_that_closes_after_each_answer_is_read_whole(void **state
     fakes_stop(fake, 1);
 }
 
+enum { EXCEPTIONS = 11 };
+
+/* Device i answers every request with exception i + 1; the last link is to a good one. */
+static bool every_exception_is_told(const struct rig *rig, int unused)
+{
+    (void)unused;
+    for (int i = 0; i < EXCEPTIONS; i++) {
+        bool busy = i + 1 == 5 || i + 1 == 6; /* 05 acknowledge, 06 busy: later, not bad */
+        const struct sample *sample = &rig->sample[i];
+        if (rig->state[i].exceptions < 1)
+            return false;
+        if (busy ? sample->cause != CAUSE_DEVICE_BUSY : sample->quality != QUALITY_BAD)
+            return false;
+        assert_int_not_equal(sample->cause, CAUSE_NONE);
+    }
+    return rig->sample[EXCEPTIONS].quality == QUALITY_GOOD;
+}
+
+static bool all_are_good(const struct rig *rig, int unused)
+{
+    (void)unused;
+    for (int i = 0; i <= EXCEPTIONS; i++)
+        if (rig->sample[i].quality != QUALITY_GOOD || rig->sample[i].value != 7)
+            return false;
+    return true;
+}
+
+static void test_exceptions_1_to_11_are_told_apart_and_recovered_from(void **state)
+{
+    (void)state;
+    struct fake *fake = fakes_start(EXCEPTIONS + 1);
+    static struct rig rig;
+    struct error err = {0};
+    for (int i = 0; i <= EXCEPTIONS; i++) {
+        atomic_store(&fake[i].word[3], 7);
+        rig_link(&rig, "127.0.0.1", fake[i].port);
+        rig_point(&rig, 3)->stale_s = 0.3;
+    }
+    assert_int_equal(rig_open(&rig, &err), 0);
+    assert_true(rig_wait(&rig, all_are_good, 0));
+    for (int i = 0; i < EXCEPTIONS; i++)
+        atomic_store(&fake[i].exception, i + 1);
+    assert_true(rig_wait(&rig, every_exception_is_told, 0));
+    /* MODBUS Application Protocol V1.1b3, 7: 0A and 0B come from a gateway. */
+    assert_int_equal(rig.sample[9].cause, CAUSE_GATEWAY);
+    assert_int_equal(rig.sample[10].cause, CAUSE_GATEWAY);
+    assert_int_equal(rig.sample[1].cause, CAUSE_EXCEPTION);
+    assert_int_equal(rig.sample[3].cause, CAUSE_DEVICE_FAILURE);
+    uint64_t answers = rig.state[EXCEPTIONS].answers;
+    for (int i = 0; i < EXCEPTIONS; i++)
+        atomic_store(&fake[i].exception, 0);
+    /* A refused value is asked for again after 5 s. */
+    assert_true(rig_wait(&rig, all_are_good, 0));
+    assert_true(rig.state[EXCEPTIONS].answers > answers);
+    field_close(rig.field);
+    fakes_stop(fake, EXCEPTIONS + 1);
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
+        cmocka_unit_test(test_exceptions_1_to_11_are_told_apart_and_recovered_from),
         cmocka_unit_test(test_no_bad_answer_is_ever_shown_and_every_link_recovers),
         cmocka_unit_test(test_late_answer_is_never_taken_for_the_next),
         cmocka_unit_test(test_restart_of_the_device_is_recovered_from),
