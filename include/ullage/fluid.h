@@ -106,4 +106,38 @@ int fluid_conductivity(const struct fluid *fluid, const struct fluid_state *stat
 int fluid_du_dp(const struct fluid *fluid, double density_kg_m3, double pressure_pa,
                 double *du_dp_j_kg_pa, struct error *err) MUST_CHECK;
 
+/* Isothermal compressibility (1/rho)(drho/dp)_T = 1/(rho dp/drho), 1/Pa, and thermal expansion
+ * -(1/rho)(drho/dT)_p = (dp/dT)_rho/(rho dp/drho), 1/K. 0 where they do not exist: in two
+ * phases and at the critical point. */
+double fluid_compressibility_1_pa(const struct fluid_state *state);
+double fluid_expansion_1_k(const struct fluid_state *state);
+
+/* ---- the gas of a hall
+ * -----------------------------------------------------------------------
+ *
+ * Air into which argon, nitrogen or helium was released. Dry air: ISO 2533:1975 (US Standard
+ * Atmosphere 1976); ideal gases. Against the equations of state of the pure gases at 101.325
+ * kPa the density is right within 0.15 % above 250 K and up to 4.5 % too low where a cold gas is
+ * near its boiling point. */
+struct fluid_air {
+    double temperature_k, pressure_pa;
+    double humidity; /* relative, 0..1 of saturation over liquid water: of the whole mixture */
+    double argon, nitrogen, helium; /* released: mole fractions of the dry mixture */
+};
+struct fluid_air_state {
+    double density_kg_m3, molar_mass_kg_mol;
+    double oxygen_pa, nitrogen_pa, argon_pa, helium_pa, water_pa; /* partial pressures */
+    double oxygen_dry; /* mole fraction of the dry mixture, as an analyser with a dryer reads */
+};
+/* ERR_RANGE: a fraction below 0 or a sum above 1, a temperature out of 60 to 400 K, humidity
+ * where water is frozen (below 233.15 K) or its vapour exceeds the pressure, pressure out of
+ * 1 Pa to 0.3 MPa, and where oxygen, nitrogen or argon would condense by itself. */
+int fluid_air_state(const struct fluid_air *air, struct fluid_air_state *out,
+                    struct error *err) MUST_CHECK;
+/* Vapour pressure of liquid water, 233.15 to 400 K (supercooled below 273.16 K): Wagner, Pruss,
+ * J. Phys. Chem. Ref. Data 22 (1993) 783, equation 1; 0.025 % by its authors above the triple
+ * point. ERR_RANGE outside. */
+int fluid_water_pressure(double temperature_k, double *pressure_pa,
+                         struct error *err) MUST_CHECK;
+
 #endif

@@ -471,3 +471,14 @@ int fluid_du_dp(const struct fluid *fluid, double density_kg_m3, double pressure
     *du_dp_j_kg_pa = slope / line.dp_dt_pa_k;
     return 0;
 }
+
+double fluid_compressibility_1_pa(const struct fluid_state *state)
+{
+    double stiff = state->density_kg_m3 * state->dp_drho_pa_m3_kg;
+    return stiff > 0 ? 1 / stiff : 0;
+}
+
+double fluid_expansion_1_k(const struct fluid_state *state)
+{
+    return state->dp_dt_pa_k * fluid_compressibility_1_pa(state);
+}

@@ -127,6 +127,9 @@ static void visit_pressure_temperature(const struct fluid *fluid, const struct f
     if (dt > 0 && tp_around(fluid, s, dt, 0, a)) {
         same(fluid, s, 8, "cp = (dh/dT)_p", SLOPE(a, enthalpy_j_kg, dt), s->cp_j_kg_k,
              s->cp_j_kg_k, TOLERANCE);
+        double stiff = rho * s->dp_drho_pa_m3_kg;
+        same(fluid, s, 13, "expansion -(1/rho)(drho/dT)_p", fluid_expansion_1_k(s),
+             -SLOPE(a, density_kg_m3, dt) / rho, 1 / t + s->dp_dt_pa_k / stiff, TOLERANCE);
         volume_slope = -SLOPE(a, density_kg_m3, dt) / (rho * rho);
         has_volume = true;
         same(fluid, s, 9, "(drho/dT)_p = -(dp/dT)_rho / (dp/drho)_T",
@@ -140,6 +143,9 @@ static void visit_pressure_temperature(const struct fluid *fluid, const struct f
              -volume_slope, fabs(volume_slope) + 1 / (rho * t), TOLERANCE);
         same(fluid, s, 11, "(dh/dp)_T = v - T (dv/dT)_p", SLOPE(a, enthalpy_j_kg, dp),
              1 / rho - t * volume_slope, 1 / rho + fabs(t * volume_slope), TOLERANCE);
+        double softness = SLOPE(a, density_kg_m3, dp) / rho;
+        same(fluid, s, 14, "compressibility (1/rho)(drho/dp)_T", fluid_compressibility_1_pa(s),
+             softness, softness, TOLERANCE);
     }
     double square = s->sound_speed_m_s * s->sound_speed_m_s;
     dp = h * fmin(s->pressure_pa, rho * square);
@@ -164,7 +170,7 @@ static void test_derivatives_agree_with_differences_of_independent_states(void *
     for (size_t f = 0; f < fluid_count(); f++)
         count += surface_each(fluid_at(f), visit_whole);
     assert_true(count > 9 * GRID_T * GRID_P / 2);
-    for (int i = 0; i <= 12; i++)
+    for (int i = 0; i <= 14; i++)
         if (compared[i] < count / 2)
             fail_msg("identity %d was compared at %d of %d states only", i, compared[i], count);
 }
