@@ -117,8 +117,8 @@ double fluid_expansion_1_k(const struct fluid_state *state);
  *
  * Air into which argon, nitrogen or helium was released. Dry air: ISO 2533:1975 (US Standard
  * Atmosphere 1976); ideal gases. Against the equations of state of the pure gases at 101.325
- * kPa the density is right within 0.15 % above 250 K and up to 4.5 % too low where a cold gas is
- * near its boiling point. */
+ * kPa the density is right within 0.15 % above 250 K, and within 0.2 % too high to 4.5 % too
+ * low (near a gas's boiling point) below. */
 struct fluid_air {
     double temperature_k, pressure_pa;
     double humidity; /* relative, 0..1 of saturation over liquid water: of the whole mixture */

@@ -7,6 +7,7 @@
  * stderr, never a plausible number.
  */
 #include "fluid_input.h"
+#include "fluid_units.h"
 #include "verbs.h"
 
 #include <errno.h>
@@ -25,6 +26,8 @@ struct request {
     bool saturation;
     const char *saturation_at; /* NULL: row by row */
     bool csv;
+    const char *units_text; /* NULL: SI */
+    struct fluid_units units;
 };
 
 enum state_field {
@@ -100,7 +103,8 @@ _Static_assert(STATE_TEMPERATURE == 0 && STATE_PRESSURE == 1 && SATURATION_TEMPE
 
 static void print_help(void)
 {
-    puts("usage: ullage fluid NAME [--at PAIR | --saturation [ONE]] [--points CSV] [--csv]\n"
+    puts("usage: ullage fluid NAME [--at PAIR | --saturation [ONE]] [--points CSV] [--csv | "
+         "--units LIST]\n"
          "       ullage fluid --list\n\n"
          "Properties of a pure fluid from its published equation of state; without an option\n"
          "what the equation is and where it is valid. Pressures are absolute.\n\n"
@@ -112,8 +116,9 @@ static void print_help(void)
          "                      temperature_k,pressure_pa; with --saturation one of them.\n"
          "                      Answers in CSV; a row that cannot be computed keeps its\n"
          "                      inputs, its reason goes to stderr, the status is 1\n"
-         "  --csv               the answer in CSV, SI units\n"
-         "  --list              the fluids and the source of each");
+         "  --units LIST        units of the table for people: kPa,degC,kJ/kg\n"
+         "  --csv               the answer in CSV, SI units always\n"
+         "  --list              the fluids, their limits, stated uncertainty and source");
 }
 
 /* ---- one answer
@@ -198,10 +203,12 @@ static void print_table(const struct request *request, const struct column *colu
     for (int i = 0; i < count; i++) {
         double value;
         const char *text = answer->field[i];
+        struct fluid_unit unit = fluid_units_shown(&request->units, column[i].unit);
         if (text[0] == '\0')
             printf("  %-17s %14s\n", column[i].says, "-");
         else if (text_to_double(text, &value) == 0)
-            printf("  %-17s %14.7g %s\n", column[i].says, value, column[i].unit);
+            printf("  %-17s %14.7g %s\n", column[i].says, (value - unit.offset) / unit.scale,
+                   unit.symbol);
         else
             printf("  %-17s %14s\n", column[i].says, text);
     }
@@ -431,7 +438,10 @@ static void run_list(void)
 {
     for (size_t i = 0; i < fluid_count(); i++) {
         const struct fluid *fluid = fluid_at(i);
-        printf("%-13s %s\n", fluid_name(fluid), fluid_limits(fluid)->source);
+        const struct fluid_limits *limits = fluid_limits(fluid);
+        printf("%-13s %.6g to %.6g K, up to %.6g MPa; %s\n%-13s %s\n", fluid_name(fluid),
+               limits->triple_temperature_k, limits->max_temperature_k,
+               limits->max_pressure_pa / 1e6, limits->uncertainty, "", limits->source);
     }
 }
 
@@ -466,8 +476,16 @@ static int unknown_fluid(const char *name)
                       name);
 }
 
-static int run(const struct request *request)
+static int run(struct request *request)
 {
+    struct error err = {0};
+    if (request->units_text != NULL && (request->csv || request->points != NULL))
+        return verb_usage("fluid", "--units is for the table; CSV is in SI units always");
+    if (request->units_text != NULL && request->at == NULL && !request->saturation)
+        return verb_usage("fluid", "--units needs --at or --saturation");
+    if (request->units_text != NULL &&
+        fluid_units_parse(request->units_text, &request->units, &err) != 0)
+        return verb_usage("fluid", "--units: %s", err.text);
     if (request->at != NULL && (request->saturation || request->points != NULL))
         return verb_usage("fluid", "--at stands alone, without --saturation and --points");
     if (request->saturation_at != NULL && request->points != NULL)
@@ -486,12 +504,21 @@ static int run(const struct request *request)
 
 int verb_fluid(int argc, char **argv)
 {
-    enum { FLUID_AT = 1, FLUID_SATURATION, FLUID_POINTS, FLUID_CSV, FLUID_LIST, FLUID_HELP };
+    enum {
+        FLUID_AT = 1,
+        FLUID_SATURATION,
+        FLUID_POINTS,
+        FLUID_CSV,
+        FLUID_UNITS,
+        FLUID_LIST,
+        FLUID_HELP
+    };
     static const struct option table[] = {
         {"at",         required_argument, NULL, FLUID_AT        },
         {"saturation", optional_argument, NULL, FLUID_SATURATION},
         {"points",     required_argument, NULL, FLUID_POINTS    },
         {"csv",        no_argument,       NULL, FLUID_CSV       },
+        {"units",      required_argument, NULL, FLUID_UNITS     },
         {"list",       no_argument,       NULL, FLUID_LIST      },
         {"help",       no_argument,       NULL, FLUID_HELP      },
         {NULL,         0,                 NULL, 0               },
@@ -516,6 +543,9 @@ int verb_fluid(int argc, char **argv)
             break;
         case FLUID_CSV:
             request.csv = true;
+            break;
+        case FLUID_UNITS:
+            request.units_text = optarg;
             break;
         case FLUID_LIST:
             run_list();
