@@ -130,6 +130,12 @@ bench: $(BENCHES) $(BUILD)/ullage ## print speeds, the figure to reach beside ea
 soak: $(BUILD)/tests/field/test_soak ## links among misbehaving devices for a day; SOAK_S=seconds
 	ULLAGE_SOAK_S=$(or $(SOAK_S),86400) $<
 
+lines: $(BUILD)/libullage.a ## make the tables of the saturation lines anew, from the equations
+	$(Q)$(CC) $(ALL_CPPFLAGS) $(ALL_CFLAGS) $(ALL_LDFLAGS) -o $(BUILD)/make_lines \
+	    tests/tools/make_lines.c $(BUILD)/libullage.a $(LIBS)
+	$(BUILD)/make_lines >$(BUILD)/lines.c
+	cp $(BUILD)/lines.c src/fluid/lines.c
+
 demo: ## the dashboard on a simulated plant; needs nothing else
 	@packaging/install-deps run
 	@$(MAKE) --no-print-directory $(PARALLEL) all
@@ -185,7 +191,7 @@ clean: ## remove $(BUILD)
 help: ## list the targets
 	@sed -n 's/^\([a-z-]*\):[^#]*## \(.*\)/  make \1	\2/p' Makefile | expand -t 20
 
-.PHONY: soak all tests check run-tests check-asan check-tsan golden bench demo format format-check lint doc \
+.PHONY: soak all tests check run-tests check-asan check-tsan golden bench lines demo format format-check lint doc \
         install uninstall dist clean help always
 .SECONDARY:
 -include $(patsubst %.c,$(BUILD)/%.d,$(SRC) $(TEST_SRC) $(BENCH_SRC))

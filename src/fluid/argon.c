@@ -136,5 +136,6 @@ const struct fluid fluid_argon = {
         {83.806, 260, 83.8058, 68891, {-7476.2665, 9959.0613}, {1.05, 1.275}},
     },
     .transport = &transport,
+    .line = &line_argon,
 };
 /* clang-format on */

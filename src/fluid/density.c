@@ -16,6 +16,9 @@
 enum { STEPS_MAX = 100 };
 static const double STEP_TOLERANCE = 4 * DBL_EPSILON;
 static const double GROWTH_MAX = 0.2;
+/* A metastable state farther from the saturated one than this is proved to be on its branch. */
+static const double NEAR_START = 0.02;
+enum { PROOF_STEPS = 8 };
 
 /* Pressure, density times its slope, and density squared times half its second derivative;
  * all over density R T. */
@@ -35,10 +38,10 @@ static struct compression compression_at(const struct isotherm *isotherm, double
 }
 
 /* Halley's step, relative to density; Newton's where curvature would reverse it. */
-static double step_relative(const struct compression *at, double miss)
+static double step_relative(const struct compression *at, double miss, bool halley)
 {
     double newton = -miss / at->slope, bend = newton * at->curve / at->slope;
-    return bend > -0.5 && bend < 0.5 ? newton / (1 + bend) : newton;
+    return halley && bend > -0.5 && bend < 0.5 ? newton / (1 + bend) : newton;
 }
 
 /* After a step of this size the next one, of third order, is below the last digits. */
@@ -50,7 +53,7 @@ static bool settled(const struct compression *at, double step)
 
 /* One branch below the critical temperature. low and high bound the branch. */
 static int solve_branch(const struct isotherm *isotherm, double pressure, double start,
-                        double low, double high, double *out)
+                        double low, double high, bool halley, double *out)
 {
     double rt = isotherm->fluid->limits.gas_constant_j_mol_k * isotherm->temperature_k;
     double density = start, last = HUGE_VAL;
@@ -59,7 +62,7 @@ static int solve_branch(const struct isotherm *isotherm, double pressure, double
         double miss = at.z - pressure / (density * rt);
         if (!(at.slope > 0) || !isfinite(miss))
             return ERR_RANGE;
-        double step = step_relative(&at, miss);
+        double step = step_relative(&at, miss, halley);
         /* Pressed hard near the critical temperature the tangent is flat and points far beyond
          * any liquid, where the equation means nothing. */
         if (step > GROWTH_MAX)
@@ -101,7 +104,7 @@ static int solve_bracketed(const struct isotherm *isotherm, double pressure, dou
         } else {
             low = density;
         }
-        double step = at.slope > 0 ? step_relative(&at, miss) : -1;
+        double step = at.slope > 0 ? step_relative(&at, miss, true) : -1;
         double next = density + step * density;
         if (fabs(step) <= STEP_TOLERANCE || settled(&at, step)) {
             *out = next;
@@ -127,15 +130,39 @@ static int solve_bracketed(const struct isotherm *isotherm, double pressure, dou
     return ERR_CONVERGE;
 }
 
+/* Within the spinodal an equation may have loops that are no state: pressure must rise with
+ * density all the way. */
+static bool same_branch(const struct isotherm *isotherm, double start, double end)
+{
+    for (int i = 1; i < PROOF_STEPS; i++)
+        if (!(compression_at(isotherm, start + (end - start) * i / PROOF_STEPS).slope > 0))
+            return false;
+    return true;
+}
+
 int density_solve(const struct isotherm *isotherm, double pressure_pa, enum fluid_phase wanted,
                   double start_mol_m3, double *density_mol_m3)
 {
     const struct fluid *fluid = isotherm->fluid;
     double critical = fluid->critical_density_mol_m3;
-    if (wanted == FLUID_PHASE_LIQUID)
-        return solve_branch(isotherm, pressure_pa, start_mol_m3, critical, 12 * critical,
-                            density_mol_m3);
-    if (wanted == FLUID_PHASE_VAPOUR)
-        return solve_branch(isotherm, pressure_pa, start_mol_m3, 0, critical, density_mol_m3);
-    return solve_bracketed(isotherm, pressure_pa, start_mol_m3, density_mol_m3);
+    if (wanted != FLUID_PHASE_LIQUID && wanted != FLUID_PHASE_VAPOUR)
+        return solve_bracketed(isotherm, pressure_pa, start_mol_m3, density_mol_m3);
+    bool liquid = wanted == FLUID_PHASE_LIQUID;
+    double low = 0, high = critical;
+    if (liquid) {
+        /* An equation's own critical density may be below the published one. */
+        low = start_mol_m3 > critical ? critical : (1 - NEAR_START) * start_mol_m3;
+        high = 12 * critical;
+    }
+    int code =
+        solve_branch(isotherm, pressure_pa, start_mol_m3, low, high, true, density_mol_m3);
+    /* Close to the spinodal Halley's step may pass it, where Newton's stays before it. */
+    if (code != 0)
+        code =
+            solve_branch(isotherm, pressure_pa, start_mol_m3, low, high, false, density_mol_m3);
+    double away = code == 0 ? *density_mol_m3 / start_mol_m3 - 1 : 0;
+    if ((liquid ? -away : away) > NEAR_START &&
+        !same_branch(isotherm, start_mol_m3, *density_mol_m3))
+        return ERR_RANGE;
+    return code;
 }

@@ -64,6 +64,23 @@ struct transport {
     double q_d_per_m, xi0_m, t_ref_k; /* critical enhancement */
 };
 
+/* The saturation line as Chebyshev expansions, of delta or of logarithms relative to the
+ * critical values; made from the equation by 'make lines'. */
+enum { LINE_TERMS = 14 };
+struct line_piece {
+    double liquid[LINE_TERMS], ln_vapour[LINE_TERMS], ln_pressure[LINE_TERMS];
+};
+struct saturation_line {
+    double critical_temperature_k; /* where the equation's two phases are one */
+    double end_temperature_k;      /* the table applies up to here */
+    double low, high;              /* of s = sqrt(1 - T/T_c) */
+    int count;
+    const struct line_piece *piece;
+    double inverse_low, inverse_high; /* of q = sqrt(ln(p_c/p)) */
+    int inverse_count;
+    const double (*inverse)[LINE_TERMS]; /* T/T_c */
+};
+
 struct fluid {
     const char *name;
     struct fluid_limits limits;
@@ -84,8 +101,11 @@ struct fluid {
     enum melting_form melting;
     int melting_count;
     struct melting_part melting_part[2];
-    const struct transport *transport; /* NULL: no model */
+    const struct transport *transport;  /* NULL: no model */
+    const struct saturation_line *line; /* NULL: every saturation is solved in full */
 };
+extern const struct saturation_line line_argon, line_nitrogen, line_oxygen, line_helium,
+    line_neon, line_krypton, line_xenon, line_parahydrogen, line_methane;
 
 /* The part of an equation that depends on temperature alone, computed once per isotherm. A
  * slot gathers the terms of one delta^d exp(-delta^l): c = sum n tau^t, tau dc/dtau,
@@ -161,6 +181,18 @@ bool saturation_has_pressure(const struct fluid *fluid, double pressure_pa);
 double ancillary_pressure_pa(const struct fluid *fluid, double temperature_k);
 double ancillary_liquid_mol_m3(const struct fluid *fluid, double temperature_k);
 double ancillary_vapour_mol_m3(const struct fluid *fluid, double temperature_k);
+
+/* The saturation line by its table: densities as delta. False where the table does not apply
+ * (above its end, below the triple point). */
+struct line_point {
+    double pressure_pa, liquid, vapour;
+};
+bool line_at_temperature(const struct fluid *fluid, double temperature_k,
+                         struct line_point *out);
+bool line_temperature(const struct fluid *fluid, double pressure_pa, double *temperature_k);
+/* Both densities (delta) in equilibrium at a temperature, by Newton's method on the equation
+ * itself from the values given. 0 or ERR_CONVERGE. */
+int saturation_solve(const struct isotherm *isotherm, double *liquid, double *vapour);
 
 /* Pressure of the melting line at T; false where no line is known. */
 bool melting_pressure(const struct fluid *fluid, double temperature_k, double *pressure_pa);

@@ -87,5 +87,6 @@ const struct fluid fluid_helium = {
     .melting_part = {
         {2.1768, 700, 1, -1606700.0, {1606700.0}, {1.565}},
     },
+    .line = &line_helium,
 };
 /* clang-format on */

@@ -75,5 +75,6 @@ const struct fluid fluid_krypton = {
     .melting_part = {
         {115.77, 170, 1, -237497645.7, {109479.2307}, {1.6169841}},
     },
+    .line = &line_krypton,
 };
 /* clang-format on */

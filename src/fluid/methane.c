@@ -113,5 +113,6 @@ const struct fluid fluid_methane = {
     .melting_part = {
         {90.6941, 600, 90.6941, 11700.0, {208000000.0}, {1.698}},
     },
+    .line = &line_methane,
 };
 /* clang-format on */

@@ -81,5 +81,6 @@ const struct fluid fluid_neon = {
     .melting_part = {
         {24.556, 330, 24.556, 43417.232458065846, {3552.0834, 1447.21543}, {1.0, 1.60834}},
     },
+    .line = &line_neon,
 };
 /* clang-format on */

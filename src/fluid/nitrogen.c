@@ -144,5 +144,6 @@ const struct fluid fluid_nitrogen = {
         {63.151, 287, 63.151, 12523, {12798.61}, {1.78963}},
     },
     .transport = &transport,
+    .line = &line_nitrogen,
 };
 /* clang-format on */

@@ -136,5 +136,6 @@ const struct fluid fluid_oxygen = {
         {54.361, 63.1, 1, -266999247.652, {227606.348}, {1.769}},
     },
     .transport = &transport,
+    .line = &line_oxygen,
 };
 /* clang-format on */

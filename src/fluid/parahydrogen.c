@@ -91,5 +91,6 @@ const struct fluid fluid_parahydrogen = {
         {13.8033, 22, 1, -21155737.752, {125746.643}, {1.955}},
         {22, 170, 1, -26280332.904, {248578.596}, {1.764739}},
     },
+    .line = &line_parahydrogen,
 };
 /* clang-format on */

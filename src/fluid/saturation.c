@@ -5,7 +5,7 @@
  * The saturation line: equal pressure and Gibbs energy of both phases, by Newton's method from
  * the auxiliary equations' start. At given temperature two unknowns (both densities; the scheme
  * of Akasaka, J. Thermal Sci. Tech. 3 (2008) 442); at given pressure the temperature is the
- * third.
+ * third. Where the fluid's table of that solution applies (line.c), it is read instead.
  */
 #include "equation.h"
 
@@ -39,7 +39,7 @@ static struct branch branch_at(const struct isotherm *isotherm, double delta)
     };
 }
 
-static int densities_at(const struct isotherm *isotherm, double *liquid, double *vapour)
+int saturation_solve(const struct isotherm *isotherm, double *liquid, double *vapour)
 {
     double last = HUGE_VAL, rest = 0;
     for (int i = 0; i < STEPS_MAX; i++) {
@@ -59,9 +59,9 @@ static int densities_at(const struct isotherm *isotherm, double *liquid, double 
         *vapour += share * step_v;
         double moved = fabs(step_l) / *liquid + fabs(step_v) / *vapour;
         /* Where the branches meet slopes vanish, and what a double leaves of a step grows with
-         * the third power of their nearness. */
+         * the second and third power of their nearness. */
         double apart = (*liquid - *vapour) / (*liquid + *vapour);
-        rest = 1e-10 + 1e-15 / (apart * apart * apart);
+        rest = 1e-10 + (1e-12 + 1e-15 / apart) / (apart * apart);
         if (moved < 4 * DBL_EPSILON || (moved >= last && moved < rest && share == 1))
             return 0;
         last = moved;
@@ -75,10 +75,21 @@ static void densities_near_critical(const struct isotherm *isotherm, double *liq
     struct critical_branches cubic = critical_branches(isotherm);
     double l = *liquid = cubic.liquid, v = *vapour = cubic.vapour;
     /* So near that Newton finds nothing the cubic is better than any double tells. */
-    if (l > v && densities_at(isotherm, &l, &v) == 0 && l > cubic.liquid_end &&
+    if (l > v && saturation_solve(isotherm, &l, &v) == 0 && l > cubic.liquid_end &&
         v < cubic.vapour_end) {
         *liquid = l;
         *vapour = v;
+    }
+}
+
+static void fill_pressure(struct fluid_saturation *out, double pressure)
+{
+    struct fluid_state *phase[] = {&out->liquid, &out->vapour};
+    out->pressure_pa = pressure;
+    for (int i = 0; i < 2; i++) {
+        phase[i]->pressure_pa = pressure;
+        phase[i]->enthalpy_j_kg =
+            phase[i]->internal_energy_j_kg + pressure / phase[i]->density_kg_m3;
     }
 }
 
@@ -90,10 +101,7 @@ static void fill(const struct isotherm *isotherm, double liquid, double vapour,
     state_fill(isotherm, vapour * reduce, &out->vapour);
     out->temperature_k = isotherm->temperature_k;
     /* The vapour's pressure is the better conditioned one; both phases carry it. */
-    out->pressure_pa = out->vapour.pressure_pa;
-    out->liquid.pressure_pa = out->pressure_pa;
-    out->liquid.enthalpy_j_kg =
-        out->liquid.internal_energy_j_kg + out->pressure_pa / out->liquid.density_kg_m3;
+    fill_pressure(out, out->vapour.pressure_pa);
     out->liquid.phase = FLUID_PHASE_LIQUID;
     out->vapour.phase = FLUID_PHASE_VAPOUR;
     out->liquid.vapour_fraction = 0;
@@ -116,14 +124,19 @@ int fluid_saturation_at_t(const struct fluid *fluid, double temperature_k,
                          fluid->name, limits->triple_temperature_k,
                          limits->critical_temperature_k, temperature_k);
     struct isotherm isotherm;
+    struct line_point line;
     isotherm_set(&isotherm, fluid, temperature_k);
+    if (line_at_temperature(fluid, temperature_k, &line)) {
+        fill(&isotherm, line.liquid, line.vapour, out);
+        return 0;
+    }
     double reduce = fluid->reduce_density_mol_m3;
     double liquid = ancillary_liquid_mol_m3(fluid, temperature_k) / reduce;
     double vapour = ancillary_vapour_mol_m3(fluid, temperature_k) / reduce;
     double gap = 1 - temperature_k / limits->critical_temperature_k;
     if (gap < CRITICAL_NEAR) {
         densities_near_critical(&isotherm, &liquid, &vapour);
-    } else if (densities_at(&isotherm, &liquid, &vapour) != 0) {
+    } else if (saturation_solve(&isotherm, &liquid, &vapour) != 0) {
         return error_set(err, ERR_CONVERGE, "%s: saturation at %.9g K was not found",
                          fluid->name, temperature_k);
     }
@@ -195,6 +208,13 @@ int fluid_saturation_at_p(const struct fluid *fluid, double pressure_pa,
 {
     const struct fluid_limits *limits = &fluid->limits;
     struct fluid_saturation found;
+    double temperature, last = HUGE_VAL;
+    if (line_temperature(fluid, pressure_pa, &temperature) &&
+        fluid_saturation_at_t(fluid, temperature, &found, NULL) == 0) {
+        fill_pressure(&found, pressure_pa);
+        *out = found;
+        return 0;
+    }
     /* The pressures of the tables are rounded; the equation's own decide. */
     bool within = saturation_has_pressure(fluid, pressure_pa);
     if (!within && fabs(pressure_pa / limits->critical_pressure_pa - 1) < ROUNDED) {
@@ -213,7 +233,7 @@ int fluid_saturation_at_p(const struct fluid *fluid, double pressure_pa,
                          "%.6g Pa (asked: %.6g Pa)",
                          fluid->name, limits->triple_pressure_pa, limits->critical_pressure_pa,
                          pressure_pa);
-    double temperature = start_temperature(fluid, pressure_pa), last = HUGE_VAL;
+    temperature = start_temperature(fluid, pressure_pa);
     for (int i = 0; i < STEPS_MAX; i++) {
         int code = fluid_saturation_at_t(fluid, temperature, &found, NULL);
         if (code != 0)

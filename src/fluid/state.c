@@ -10,11 +10,6 @@
 #include <float.h>
 #include <math.h>
 
-/* Below this part of the critical temperature the auxiliary equations are surely on the stable
- * side of each branch; above it the full saturation is solved. */
-static const double ANCILLARY_SAFE = 0.97;
-/* Where pressure is nearer to the auxiliary vapour pressure than this, the full one decides. */
-static const double NEAR_LINE = 0.03;
 /* A state this near to the line (relative in pressure) is on it: a double cannot tell. */
 static const double ON_LINE = 1e-11;
 
@@ -24,33 +19,29 @@ static const double DENSEST = 12;
 static const double DENSE = 3;
 static const double SMALL_PRESSURE_PA = 1e-3;
 
-/* Where the branches begin at a temperature, and the vapour pressure as well as it is needed.
- */
+/* Where the branches begin at a temperature; molar densities. */
 struct line {
-    double pressure, liquid, vapour; /* molar densities */
-    bool full, near_critical;
-    struct fluid_saturation saturation;
+    double pressure, liquid, vapour;
+    bool near_critical; /* beyond the end of the fluid's table */
 };
 
-static int line_at(const struct fluid *fluid, double temperature, double pressure,
-                   enum fluid_phase wanted, struct line *line, struct error *err)
+static int line_at(const struct fluid *fluid, double temperature, struct line *line,
+                   struct error *err)
 {
-    double part = temperature / fluid->limits.critical_temperature_k;
-    line->pressure = ancillary_pressure_pa(fluid, temperature);
-    line->liquid = ancillary_liquid_mol_m3(fluid, temperature);
-    line->vapour = ancillary_vapour_mol_m3(fluid, temperature);
-    bool near = fabs(pressure / line->pressure - 1) < NEAR_LINE;
-    line->near_critical = part > ANCILLARY_SAFE;
-    line->full = line->near_critical || (wanted == FLUID_PHASE_ANY && near);
-    if (!line->full)
+    double reduce = fluid->reduce_density_mol_m3;
+    struct fluid_saturation saturation;
+    struct line_point point;
+    if (line_at_temperature(fluid, temperature, &point)) {
+        *line = (struct line){point.pressure_pa, point.liquid * reduce, point.vapour * reduce,
+                              false};
         return 0;
-    int code = fluid_saturation_at_t(fluid, temperature, &line->saturation, err);
-    if (code != 0)
-        return code;
-    line->pressure = line->saturation.pressure_pa;
-    line->liquid = molar_density(fluid, line->saturation.liquid.density_kg_m3);
-    line->vapour = molar_density(fluid, line->saturation.vapour.density_kg_m3);
-    return 0;
+    }
+    int code = fluid_saturation_at_t(fluid, temperature, &saturation, err);
+    if (code == 0)
+        *line = (struct line){saturation.pressure_pa,
+                              molar_density(fluid, saturation.liquid.density_kg_m3),
+                              molar_density(fluid, saturation.vapour.density_kg_m3), true};
+    return code;
 }
 
 static int no_phase(const struct fluid *fluid, enum fluid_phase wanted, double temperature,
@@ -79,14 +70,18 @@ int fluid_at_tp(const struct fluid *fluid, double temperature_k, double pressure
     if (!above) {
         if (wanted == FLUID_PHASE_SUPERCRITICAL || wanted == FLUID_PHASE_TWO_PHASE)
             return no_phase(fluid, wanted, temperature_k, pressure_pa, err);
-        code = line_at(fluid, temperature_k, pressure_pa, wanted, &line, err);
+        code = line_at(fluid, temperature_k, &line, err);
         if (code != 0)
             return code;
+        double part = pressure_pa / line.pressure;
         if (wanted == FLUID_PHASE_ANY)
-            phase = pressure_pa >= line.pressure ? FLUID_PHASE_LIQUID : FLUID_PHASE_VAPOUR;
-        start = phase == FLUID_PHASE_LIQUID ? line.liquid
-                                            : (ideal < line.vapour ? ideal : line.vapour);
-        state.saturated = line.full && fabs(pressure_pa / line.pressure - 1) < ON_LINE;
+            phase = part >= 1 ? FLUID_PHASE_LIQUID : FLUID_PHASE_VAPOUR;
+        /* Vapour: compressibility from 1 to that of the saturated vapour, as pressure goes. */
+        if (phase == FLUID_PHASE_LIQUID || part >= 1)
+            start = phase == FLUID_PHASE_LIQUID ? line.liquid : line.vapour;
+        else
+            start = ideal / (1 + part * (ideal / (part * line.vapour) - 1));
+        state.saturated = fabs(part - 1) < ON_LINE;
     }
     isotherm_set(&isotherm, fluid, temperature_k);
     code = ERR_RANGE;

@@ -70,5 +70,6 @@ const struct fluid fluid_xenon = {
     .tension_count = 2,
     .tension_a = {-0.11538, 0.16598},
     .tension_n = {1.0512, 1.098},
+    .line = &line_xenon,
 };
 /* clang-format on */
