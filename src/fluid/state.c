@@ -313,7 +313,7 @@ static int search_solve(const struct search *search, double low, double high,
         if (code != 0)
             return code;
         if (miss == 0 || high - low <= 4 * DBL_EPSILON * high) {
-            /* A jump is no state: oxygen's equation has its critical point 10 mK too high. */
+            /* A jump is no state: oxygen's equation has its critical point 19 mK too high. */
             if (fabs(miss) > end_slack(search, &state))
                 return ERR_RANGE;
             *out = state;
