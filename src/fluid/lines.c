@@ -3,7 +3,7 @@
 
 /*
  * Saturation lines as Chebyshev expansions. Made by 'make lines' (tests/tools/make_lines.c)
- * from the equations beside; do not edit. tests/fluid/test_line.c holds them to the full solution.
+ * from the equations beside; do not edit. tests/fluid/test_line.c holds them to the solution.
  */
 #include "equation.h"
 

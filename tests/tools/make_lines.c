@@ -291,7 +291,7 @@ int main(void)
     printf("/* SPDX-License-Identifier: MIT */\n/* Copyright the ullage authors */\n\n"
            "/*\n * Saturation lines as Chebyshev expansions. Made by 'make lines' "
            "(tests/tools/make_lines.c)\n * from the equations beside; do not edit. "
-           "tests/fluid/test_line.c holds them to the full solution.\n */\n"
+           "tests/fluid/test_line.c holds them to the solution.\n */\n"
            "#include \"equation.h\"\n\n/* clang-format off */\n");
     for (size_t i = 0; i < fluid_count(); i++)
         make(fluid_at(i));
