@@ -62,6 +62,12 @@ struct fluid_state {
  * validity, in the solid region, or where the wanted phase does not exist. */
 int fluid_at_tp(const struct fluid *fluid, double temperature_k, double pressure_pa,
                 enum fluid_phase wanted, struct fluid_state *out, struct error *err) MUST_CHECK;
+/* The same from a state found before for the same fluid, which may be NULL or out itself: a
+ * start for the search, sooner there when it is close by. The result is that of fluid_at_tp to
+ * 1e-12. */
+int fluid_at_tp_near(const struct fluid *fluid, double temperature_k, double pressure_pa,
+                     enum fluid_phase wanted, const struct fluid_state *last,
+                     struct fluid_state *out, struct error *err) MUST_CHECK;
 /* The stable state at density and temperature; two phases where there are two. */
 int fluid_at_rhot(const struct fluid *fluid, double density_kg_m3, double temperature_k,
                   struct fluid_state *out, struct error *err) MUST_CHECK;

@@ -12,6 +12,8 @@
 
 /* A state this near to the line (relative in pressure) is on it: a double cannot tell. */
 static const double ON_LINE = 1e-11;
+/* A state differing more than this (relative) is no start. */
+static const double NEARBY = 0.05;
 
 /* Solid-like densities beyond any validity; over the critical one. */
 static const double DENSEST = 12;
@@ -51,8 +53,30 @@ static int no_phase(const struct fluid *fluid, enum fluid_phase wanted, double t
                      fluid->name, fluid_phase_word(wanted), temperature, pressure);
 }
 
-int fluid_at_tp(const struct fluid *fluid, double temperature_k, double pressure_pa,
-                enum fluid_phase wanted, struct fluid_state *out, struct error *err)
+/* A start from a state close by, by its own slopes: on the stable side of the branch's end. */
+static double start_near(const struct fluid *fluid, const struct fluid_state *last,
+                         double temperature, double pressure, enum fluid_phase phase,
+                         const struct line *line, double start)
+{
+    double away = temperature - last->temperature_k;
+    if (last->phase != phase || !(last->dp_drho_pa_m3_kg > 0) ||
+        !(fabs(away) < NEARBY * temperature))
+        return start;
+    double step =
+        (pressure - last->pressure_pa - last->dp_dt_pa_k * away) / last->dp_drho_pa_m3_kg;
+    if (!(fabs(step) < NEARBY * last->density_kg_m3))
+        return start;
+    double near = molar_density(fluid, last->density_kg_m3 + step);
+    if (phase == FLUID_PHASE_LIQUID)
+        return pressure >= line->pressure ? fmax(near, line->liquid) : start;
+    if (phase == FLUID_PHASE_VAPOUR)
+        return pressure <= line->pressure ? fmin(near, line->vapour) : start;
+    return near;
+}
+
+static int at_tp(const struct fluid *fluid, double temperature_k, double pressure_pa,
+                 enum fluid_phase wanted, const struct fluid_state *last,
+                 struct fluid_state *out, struct error *err)
 {
     const struct fluid_limits *limits = &fluid->limits;
     int code = validity_check(fluid, temperature_k, pressure_pa, err);
@@ -83,6 +107,8 @@ int fluid_at_tp(const struct fluid *fluid, double temperature_k, double pressure
             start = ideal / (1 + part * (ideal / (part * line.vapour) - 1));
         state.saturated = fabs(part - 1) < ON_LINE;
     }
+    if (last != NULL)
+        start = start_near(fluid, last, temperature_k, pressure_pa, phase, &line, start);
     isotherm_set(&isotherm, fluid, temperature_k);
     code = ERR_RANGE;
     if (line.near_critical)
@@ -108,6 +134,19 @@ int fluid_at_tp(const struct fluid *fluid, double temperature_k, double pressure
     state.vapour_fraction = phase == FLUID_PHASE_LIQUID ? 0 : 1;
     *out = state;
     return 0;
+}
+
+int fluid_at_tp(const struct fluid *fluid, double temperature_k, double pressure_pa,
+                enum fluid_phase wanted, struct fluid_state *out, struct error *err)
+{
+    return at_tp(fluid, temperature_k, pressure_pa, wanted, NULL, out, err);
+}
+
+int fluid_at_tp_near(const struct fluid *fluid, double temperature_k, double pressure_pa,
+                     enum fluid_phase wanted, const struct fluid_state *last,
+                     struct fluid_state *out, struct error *err)
+{
+    return at_tp(fluid, temperature_k, pressure_pa, wanted, last, out, err);
 }
 
 static double mix(double liquid, double vapour, double fraction)
@@ -166,9 +205,31 @@ int fluid_at_px(const struct fluid *fluid, double pressure_pa, double vapour_fra
     return code;
 }
 
+/* du/dT of a mixture of a constant specific volume. */
+static double mixture_slope(const struct fluid_saturation *line, double v)
+{
+    /* Along the line, for each phase: drho/dT = (dp/dT|sat - dp/dT|rho) / (dp/drho|T), and
+     * du = cv dT + (p - T dp/dT|rho)/rho^2 drho. Then of the mixture at constant v. */
+    const struct fluid_state *phase[] = {&line->liquid, &line->vapour};
+    double du[2], dv[2];
+    for (int i = 0; i < 2; i++) {
+        const struct fluid_state *s = phase[i];
+        double rho = s->density_kg_m3;
+        double drho = (line->dp_dt_pa_k - s->dp_dt_pa_k) / s->dp_drho_pa_m3_kg;
+        du[i] = s->cv_j_kg_k +
+                (line->pressure_pa - line->temperature_k * s->dp_dt_pa_k) / (rho * rho) * drho;
+        dv[i] = -drho / (rho * rho);
+    }
+    double v_l = 1 / line->liquid.density_kg_m3, v_v = 1 / line->vapour.density_kg_m3;
+    double q = (v - v_l) / (v_v - v_l);
+    double dq = -(mix(dv[0], dv[1], q)) / (v_v - v_l);
+    return mix(du[0], du[1], q) +
+           dq * (line->vapour.internal_energy_j_kg - line->liquid.internal_energy_j_kg);
+}
+
 /* Without a look at pressure: it may be beyond the validity. */
 static int at_rhot(const struct fluid *fluid, double density, double temperature,
-                   struct fluid_state *out, struct error *err)
+                   struct fluid_state *out, double *du_dt, struct error *err)
 {
     const struct fluid_limits *limits = &fluid->limits;
     int code = validity_check(fluid, temperature, SMALL_PRESSURE_PA, err);
@@ -189,6 +250,7 @@ static int at_rhot(const struct fluid *fluid, double density, double temperature
         double v_v = 1 / line.vapour.density_kg_m3;
         if (v >= v_l && v <= v_v) {
             two_phase(&line, v_v > v_l ? (v - v_l) / (v_v - v_l) : 0, out);
+            *du_dt = v_v > v_l ? mixture_slope(&line, v) : 0;
             return 0;
         }
         if (temperature < limits->critical_temperature_k) {
@@ -199,6 +261,7 @@ static int at_rhot(const struct fluid *fluid, double density, double temperature
     struct isotherm isotherm;
     isotherm_set(&isotherm, fluid, temperature);
     state_fill(&isotherm, molar_density(fluid, density), &state);
+    *du_dt = state.cv_j_kg_k;
     *out = state;
     return 0;
 }
@@ -224,7 +287,8 @@ int fluid_at_rhot(const struct fluid *fluid, double density_kg_m3, double temper
                   struct fluid_state *out, struct error *err)
 {
     struct fluid_state state;
-    int code = at_rhot(fluid, density_kg_m3, temperature_k, &state, err);
+    double du_dt;
+    int code = at_rhot(fluid, density_kg_m3, temperature_k, &state, &du_dt, err);
     if (code == 0)
         code = check_found(fluid, &state, err);
     if (code == 0)
@@ -241,25 +305,31 @@ struct search {
     enum { SEARCH_RHO_U, SEARCH_P_H, SEARCH_P_S } what;
 };
 
-static int search_at(const struct search *search, double temperature, struct fluid_state *state,
-                     double *miss)
+/* last: one found before, or NULL. slope: of the property over temperature along the path, 0
+ * where it is not known. */
+static int search_at(const struct search *search, double temperature,
+                     const struct fluid_state *last, struct fluid_state *state, double *miss,
+                     double *slope)
 {
     int code;
     if (search->what == SEARCH_RHO_U)
-        code = at_rhot(search->fluid, search->density, temperature, state, NULL);
+        code = at_rhot(search->fluid, search->density, temperature, state, slope, NULL);
     else
-        code = fluid_at_tp(search->fluid, temperature, search->pressure, search->phase, state,
-                           NULL);
+        code = at_tp(search->fluid, temperature, search->pressure, search->phase, last, state,
+                     NULL);
     if (code != 0)
         return code;
     double value = search->what == SEARCH_RHO_U ? state->internal_energy_j_kg
                    : search->what == SEARCH_P_H ? state->enthalpy_j_kg
                                                 : state->entropy_j_kg_k;
+    if (search->what != SEARCH_RHO_U)
+        *slope = search->what == SEARCH_P_H ? state->cp_j_kg_k : state->cp_j_kg_k / temperature;
     *miss = value - search->target;
     return 0;
 }
 
-enum { SEARCH_STEPS = 200 };
+enum { SEARCH_STEPS = 200, NEWTON_STEPS = 16 };
+static const double SETTLED = 1e-13;
 
 /* By how much the end of a path may miss: rounding of the target, and of the temperature where
  * the property is steep. */
@@ -274,16 +344,45 @@ static double end_slack(const struct search *search, const struct fluid_state *s
     return 1e-9 * (fabs(search->target) + per_mass) + 1e-10 * steep * along;
 }
 
+/* Newton's step from a start, kept between low and high. It serves nearly always, in four or
+ * five evaluations; where it does not, the slower search decides. */
+static int search_newton(const struct search *search, double low, double high, double start,
+                         struct fluid_state *out)
+{
+    double at = start > low && start < high ? start : 0.5 * (low + high), miss, slope;
+    double last = HUGE_VAL;
+    struct fluid_state state = {0};
+    for (int i = 0; i < NEWTON_STEPS; i++) {
+        if (search_at(search, at, &state, &state, &miss, &slope) != 0 || !(slope > 0))
+            return ERR_CONVERGE;
+        /* What the step would still move: temperature, and density by its expansion. */
+        double step = -miss / slope;
+        double moves = fabs(step) * (1 / at + fluid_expansion_1_k(&state));
+        if (moves <= SETTLED || (moves >= 0.5 * last && moves < 10 * SETTLED)) {
+            *out = state;
+            return 0;
+        }
+        last = moves;
+        if (miss < 0)
+            low = at;
+        else
+            high = at;
+        double next = at + step;
+        at = next > low && next < high ? next : 0.5 * (low + high);
+    }
+    return ERR_CONVERGE;
+}
+
 /* The temperature between low and high, where the property rises: false position with the
  * Illinois step (Dowell, Jarratt, BIT 11 (1971) 168), and halving whenever it dawdles. */
 static int search_solve(const struct search *search, double low, double high,
                         struct fluid_state *out)
 {
-    double miss_low, miss_high, miss, width = high - low;
+    double miss_low, miss_high, miss, slope, width = high - low;
     struct fluid_state state;
     if (!isfinite(search->target))
         return ERR_RANGE;
-    int code = search_at(search, low, &state, &miss_low);
+    int code = search_at(search, low, NULL, &state, &miss_low, &slope);
     if (code != 0)
         return code;
     if (miss_low >= 0) {
@@ -292,7 +391,7 @@ static int search_solve(const struct search *search, double low, double high,
         *out = state;
         return 0;
     }
-    code = search_at(search, high, &state, &miss_high);
+    code = search_at(search, high, NULL, &state, &miss_high, &slope);
     if (code != 0)
         return code;
     if (miss_high <= 0) {
@@ -309,7 +408,7 @@ static int search_solve(const struct search *search, double low, double high,
                 middle = 0.5 * (low + high);
             width = high - low;
         }
-        code = search_at(search, middle, &state, &miss);
+        code = search_at(search, middle, NULL, &state, &miss, &slope);
         if (code != 0)
             return code;
         if (miss == 0 || high - low <= 4 * DBL_EPSILON * high) {
@@ -348,8 +447,11 @@ int fluid_at_rhou(const struct fluid *fluid, double density_kg_m3, double intern
     /* A dense fluid meets the pressure limit long before the highest temperature, and the solid
      * at the lowest: the path goes through, and its end is looked at. */
     struct fluid_state state;
-    int code = search_solve(&search, fluid->limits.triple_temperature_k,
-                            fluid->limits.max_temperature_k, &state);
+    double low = fluid->limits.triple_temperature_k, high = fluid->limits.max_temperature_k;
+    double start = 0.7 * fluid->limits.critical_temperature_k;
+    int code = search_newton(&search, low, high, start, &state);
+    if (code != 0)
+        code = search_solve(&search, low, high, &state);
     if (code != 0)
         return error_set(err, code,
                          "%s: no state within the validity at %.6g kg/m3 and %.6g J/kg",
@@ -378,6 +480,7 @@ static double coldest(const struct fluid *fluid, double pressure)
 
 static int at_pressure(struct search *search, struct fluid_state *out, struct error *err)
 {
+    double slope;
     const struct fluid *fluid = search->fluid;
     double low = coldest(fluid, search->pressure), high = fluid->limits.max_temperature_k;
     bool heat = search->what == SEARCH_P_H;
@@ -395,6 +498,14 @@ static int at_pressure(struct search *search, struct fluid_state *out, struct er
             two_phase(&line, v > l ? (search->target - l) / (v - l) : 0, out);
             return 0;
         }
+        search->phase = search->target < l ? FLUID_PHASE_LIQUID : FLUID_PHASE_ANY;
+        const struct fluid_state *end = search->target < l ? &line.liquid : &line.vapour;
+        slope = heat ? end->cp_j_kg_k : end->cp_j_kg_k / line.temperature_k;
+        double start =
+            line.temperature_k + (search->target - (end == &line.liquid ? l : v)) / slope;
+        if (search_newton(search, end == &line.liquid ? low : line.temperature_k,
+                          end == &line.liquid ? line.temperature_k : high, start, out) == 0)
+            return 0;
         search->phase = search->target < l ? FLUID_PHASE_LIQUID : FLUID_PHASE_VAPOUR;
         if (search->phase == FLUID_PHASE_LIQUID) {
             high = line.temperature_k;
@@ -402,8 +513,8 @@ static int at_pressure(struct search *search, struct fluid_state *out, struct er
             low = line.temperature_k;
             /* Above the critical temperature the vapour has another name. */
             double critical = fluid->limits.critical_temperature_k * (1 - 1e-12), miss;
-            struct fluid_state state;
-            if (search_at(search, critical, &state, &miss) == 0 && miss < 0) {
+            struct fluid_state state = {0};
+            if (search_at(search, critical, NULL, &state, &miss, &slope) == 0 && miss < 0) {
                 low = fluid->limits.critical_temperature_k;
                 search->phase = FLUID_PHASE_SUPERCRITICAL;
             } else {
@@ -411,6 +522,8 @@ static int at_pressure(struct search *search, struct fluid_state *out, struct er
             }
         }
     }
+    if (search_newton(search, low, high, 1.1 * fluid->limits.critical_temperature_k, out) == 0)
+        return 0;
     code = search_solve(search, low, high, out);
     if (code != 0)
         return error_set(err, code, "%s: no state within the validity at %.6g Pa and %.6g %s",
@@ -447,23 +560,7 @@ int fluid_du_dp(const struct fluid *fluid, double density_kg_m3, double pressure
     if (!(v >= v_l && v <= v_v) || !(v_v > v_l))
         return error_set(err, ERR_RANGE, "%s: %.6g kg/m3 is not within two phases at %.6g Pa",
                          fluid->name, density_kg_m3, pressure_pa);
-    /* Along the line, for each phase: drho/dT = (dp/dT|sat - dp/dT|rho) / (dp/drho|T), and
-     * du = cv dT + (p - T dp/dT|rho)/rho^2 drho. Then of the mixture at constant v. */
-    const struct fluid_state *phase[] = {&line.liquid, &line.vapour};
-    double du[2], dv[2];
-    for (int i = 0; i < 2; i++) {
-        const struct fluid_state *s = phase[i];
-        double rho = s->density_kg_m3;
-        double drho = (line.dp_dt_pa_k - s->dp_dt_pa_k) / s->dp_drho_pa_m3_kg;
-        du[i] = s->cv_j_kg_k +
-                (line.pressure_pa - line.temperature_k * s->dp_dt_pa_k) / (rho * rho) * drho;
-        dv[i] = -drho / (rho * rho);
-    }
-    double q = (v - v_l) / (v_v - v_l);
-    double dq = -(mix(dv[0], dv[1], q)) / (v_v - v_l);
-    double slope = mix(du[0], du[1], q) +
-                   dq * (line.vapour.internal_energy_j_kg - line.liquid.internal_energy_j_kg);
-    *du_dp_j_kg_pa = slope / line.dp_dt_pa_k;
+    *du_dp_j_kg_pa = mixture_slope(&line, v) / line.dp_dt_pa_k;
     return 0;
 }
 
