@@ -8,14 +8,15 @@
  *   a device that drips would hold a thread for minutes);
  * - the library's own recovery and debug output are off: it would sleep and print;
  * - after any answer that is not exactly what was asked the caller closes the connection.
- * The library checks transaction, function and length of an answer. It does not check the unit
- * it names: devices that answer with a unit of their own are common enough.
+ * An answer counts only if transaction, protocol, length, unit, function and byte count are
+ * those of the request: a device or gateway that answers for another unit is not believed.
  */
 #include "internal.h"
 
 #include <errno.h>
 #include <math.h>
 #include <string.h>
+#include <sys/socket.h>
 
 #include <modbus.h>
 
@@ -24,7 +25,8 @@ int device_init(struct device *device, const char *host, int port, int unit_id,
 {
     char service[8];
     text_format(service, sizeof(service), "%d", port);
-    *device = (struct device){.host = host, .port = port, .timeout_s = timeout_s};
+    *device =
+        (struct device){.host = host, .port = port, .unit_id = unit_id, .timeout_s = timeout_s};
     if (!(timeout_s >= 0.001 && timeout_s <= 3600))
         return error_set(err, ERR_ARGUMENT, "a timeout of %g s; give 1 ms to 1 h", timeout_s);
     modbus_t *context = modbus_new_tcp_pi(host, service);
@@ -79,22 +81,64 @@ void device_done(struct device *device)
     device->context = NULL;
 }
 
-static int read_bits(modbus_t *context, const struct block *block, uint16_t *words)
+/* One request and its answer. The request is ours (MODBUS Messaging on TCP/IP V1.0b, 3.1.3),
+ * the answer is gathered by the library, which also keeps the time; then header and counts are
+ * checked here, because the library's own read functions do not look at the unit that an answer
+ * names, and their raw request has no transaction number. 0; an exception; or -1 with errno. */
+static int exchange(struct device *device, const struct block *block, uint16_t *words)
 {
-    uint8_t bits[DEVICE_READ_MAX];
-    int got = block->table == TABLE_COIL
-                  ? modbus_read_bits(context, block->address, block->count, bits)
-                  : modbus_read_input_bits(context, block->address, block->count, bits);
-    for (int i = 0; i < got; i++)
-        words[i] = bits[i] != 0;
-    return got;
-}
-
-static int read_registers(modbus_t *context, const struct block *block, uint16_t *words)
-{
-    return block->table == TABLE_INPUT
-               ? modbus_read_input_registers(context, block->address, block->count, words)
-               : modbus_read_registers(context, block->address, block->count, words);
+    enum { HEADER = 7, REQUEST = 12, FUNCTION = 7, COUNT = 8, DATA = 9 };
+    static const uint8_t functions[] = {
+        [TABLE_COIL] = MODBUS_FC_READ_COILS,
+        [TABLE_DISCRETE] = MODBUS_FC_READ_DISCRETE_INPUTS,
+        [TABLE_INPUT] = MODBUS_FC_READ_INPUT_REGISTERS,
+        [TABLE_HOLDING] = MODBUS_FC_READ_HOLDING_REGISTERS,
+    };
+    bool bits = block->table == TABLE_COIL || block->table == TABLE_DISCRETE;
+    uint16_t transaction = ++device->transaction;
+    uint8_t function = functions[block->table], answer[MODBUS_TCP_MAX_ADU_LENGTH];
+    const uint8_t request[REQUEST] = {
+        (uint8_t)(transaction >> 8),
+        (uint8_t)transaction,
+        0,
+        0,
+        0,
+        REQUEST - 6,
+        (uint8_t)device->unit_id,
+        function,
+        (uint8_t)(block->address >> 8),
+        (uint8_t)block->address,
+        (uint8_t)(block->count >> 8),
+        (uint8_t)block->count,
+    };
+    ssize_t sent = send(modbus_get_socket(device->context), request, REQUEST, MSG_NOSIGNAL);
+    if (sent != REQUEST) {
+        if (sent >= 0)
+            errno = EPIPE;
+        return -1;
+    }
+    int length = modbus_receive_confirmation(device->context, answer);
+    if (length < 0)
+        return -1;
+    int bytes = bits ? (block->count + 7) / 8 : 2 * block->count;
+    /* Transaction, protocol and unit come back as they were sent; the length is what arrived.
+     */
+    bool header = length > FUNCTION + 1 && memcmp(answer, request, 4) == 0 &&
+                  answer[4] * 256 + answer[5] == length - 6 && answer[6] == request[6];
+    errno = EMBBADDATA;
+    if (header && answer[FUNCTION] == (function | 0x80) && length == HEADER + 2) {
+        if (answer[COUNT] >= 1 && answer[COUNT] < MODBUS_EXCEPTION_MAX)
+            return answer[COUNT];
+        errno = EMBBADEXC;
+        return -1;
+    }
+    if (!header || answer[FUNCTION] != function || answer[COUNT] != bytes ||
+        length != DATA + bytes)
+        return -1;
+    for (int i = 0; i < block->count; i++)
+        words[i] = bits ? answer[DATA + i / 8] >> (i % 8) & 1
+                        : (uint16_t)(answer[DATA + 2 * i] << 8 | answer[DATA + 2 * i + 1]);
+    return 0;
 }
 
 static int trouble(const struct device *device, int code, enum device_failure *failure,
@@ -126,16 +170,9 @@ static int trouble(const struct device *device, int code, enum device_failure *f
 int device_read(struct device *device, const struct block *block, uint16_t *words,
                 enum device_failure *failure, struct error *err)
 {
-    bool bits = block->table == TABLE_COIL || block->table == TABLE_DISCRETE;
     errno = 0;
-    int got = bits ? read_bits(device->context, block, words)
-                   : read_registers(device->context, block, words);
-    int code = errno;
-    if (got == block->count)
-        return 0;
-    if (got < 0 && code > MODBUS_ENOBASE && code < MODBUS_ENOBASE + MODBUS_EXCEPTION_MAX)
-        return code - MODBUS_ENOBASE;
-    return trouble(device, got < 0 ? code : EMBBADDATA, failure, err);
+    int answer = exchange(device, block, words);
+    return answer >= 0 ? answer : trouble(device, errno, failure, err);
 }
 
 /* MODBUS Application Protocol V1.1b3, 7. */

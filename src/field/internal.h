@@ -57,7 +57,8 @@ enum { DEVICE_READ_MAX = 2000, DEVICE_REGISTER_MAX = 125 };
 
 struct device {
     const char *host;
-    int port;
+    int port, unit_id;
+    uint16_t transaction; /* of the last request */
     double timeout_s;
     struct _modbus *context;
 };

@@ -29,8 +29,8 @@ enum fake_mode {
     FAKE_GOOD,
     FAKE_DRIP,       /* one byte a segment, soon enough */
     FAKE_CLOSE_EACH, /* a good answer, then the connection is closed */
+    FAKE_TOLERATED = FAKE_CLOSE_EACH,
     FAKE_OTHER_UNIT, /* good but for the unit it names */
-    FAKE_TOLERATED = FAKE_OTHER_UNIT,
     FAKE_SILENT,
     FAKE_LATE,      /* the answer comes after the timeout */
     FAKE_LATE_NEXT, /* the answer to the request before, without its transaction */

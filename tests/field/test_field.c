@@ -629,7 +629,8 @@ static void test_inspect_tells_what_is_wrong_and_the_mend(void **state)
     assert_int_equal(field_inspect(host, port, 1, &ref, 0, 1, &word, &err), ERR_ARGUMENT);
 }
 
-/* One byte of the header wrong, anything: an answer that is taken has the right data. */
+/* One byte of the header replaced by anything: the answer is refused, but where that byte is by
+ * chance the right one (1 in 256). */
 static void test_no_wrong_header_brings_wrong_data(void **state)
 {
     struct bench *b = *state;
@@ -653,7 +654,7 @@ static void test_no_wrong_header_brings_wrong_data(void **state)
         for (int i = 0; i < 8; i++)
             assert_int_equal(words[i], 0x1111 * (i + 1));
     }
-    assert_true(taken > 20 && refused > 100);
+    assert_true(taken <= 6 && refused >= 294);
 }
 
 /* libmodbus waits with select, whose sets end at FD_SETSIZE. */
