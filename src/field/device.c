@@ -135,9 +135,13 @@ static int exchange(struct device *device, const struct block *block, uint16_t *
     if (!header || answer[FUNCTION] != function || answer[COUNT] != bytes ||
         length != DATA + bytes)
         return -1;
-    for (int i = 0; i < block->count; i++)
-        words[i] = bits ? answer[DATA + i / 8] >> (i % 8) & 1
-                        : (uint16_t)(answer[DATA + 2 * i] << 8 | answer[DATA + 2 * i + 1]);
+    const uint8_t *data = answer + DATA;
+    for (int i = 0; i < block->count; i++) {
+        if (bits)
+            words[i] = (uint16_t)(data[i / 8] >> (i % 8) & 1);
+        else
+            words[i] = (uint16_t)(data[2 * i] << 8 | data[2 * i + 1]);
+    }
     return 0;
 }
 
